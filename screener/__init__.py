@@ -1,0 +1,1 @@
+"""Screens flanged joints of polyethylene pressure mains."""
