@@ -65,7 +65,7 @@ class FindingBatch:
 
 @dataclass(frozen=True, eq=False)
 class AssumptionBatch:
-    """One rule applied to many rows.
+    """One rule applied to many rows: a look-up, a derivation or an assumption.
 
     values: SI numbers or text, per position. scatter: relative standard
     deviation of a number (0.1 = 10 %), or the chance that a text value is
@@ -74,6 +74,7 @@ class AssumptionBatch:
     """
 
     attribute: str
+    origin: Origin
     positions: np.ndarray
     values: np.ndarray
     rule: str
@@ -123,6 +124,7 @@ class Ledger:
         *,
         rule: str,
         source: str,
+        origin: Origin = Origin.ASSUMED,
         scatter: Any = 0.0,
         low: Any = np.nan,
         high: Any = np.nan,
@@ -136,6 +138,7 @@ class Ledger:
         self.assumptions.append(
             AssumptionBatch(
                 attribute,
+                origin,
                 where,
                 taken,
                 rule,
@@ -231,8 +234,6 @@ class Pipe(_Columns):
     hydrostatic_design_stress: np.ndarray
     temperature: np.ndarray
     temperature_factor: np.ndarray
-    short_term_modulus: np.ndarray  # apparent modulus at 0.5 h and the joint's temperature
-    long_term_modulus: np.ndarray  # at 50 years and the joint's temperature
 
     @property
     def bore_diameter(self) -> np.ndarray:
