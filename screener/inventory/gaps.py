@@ -1,0 +1,152 @@
+"""The sheet on which gaps are filled: values, where each comes from, and by which rule."""
+
+from __future__ import annotations
+
+import numpy as np
+import pandas as pd
+
+from screener.columns import inventory_attributes
+from screener.records import Ledger, Origin
+
+NUMERIC = ("quantity", "number", "count", "date")
+
+
+class Gaps:
+    """Values by attribute (SI, NaN or None where missing) with an origin code for each cell.
+
+    Rules call `fill`; nothing else writes. A value read in the file is never
+    replaced: `reject` marks one that another finding has ruled out.
+    """
+
+    def __init__(self, values: dict, origin: dict, rows: int, ledger: Ledger) -> None:
+        self.rows = rows
+        self.ledger = ledger
+        self._values = {}
+        self._origin = {}
+        self.scatter: dict[str, np.ndarray] = {}
+        for name, attribute in inventory_attributes().items():
+            numeric = attribute.kind in NUMERIC
+            if name in values:
+                given = values[name]
+                self._values[name] = np.array(given, dtype=float if numeric else object)
+                self._origin[name] = np.array(origin[name], dtype=np.uint8)
+            else:
+                self._values[name] = np.full(rows, np.nan if numeric else None, dtype=float if numeric else object)
+                self._origin[name] = np.full(rows, Origin.MISSING, dtype=np.uint8)
+
+    def __getitem__(self, attribute: str) -> np.ndarray:
+        return self._values[attribute]
+
+    def origin(self, attribute: str) -> np.ndarray:
+        return self._origin[attribute]
+
+    @property
+    def origins(self) -> dict[str, np.ndarray]:
+        return self._origin
+
+    @property
+    def values(self) -> dict[str, np.ndarray]:
+        return self._values
+
+    def add(self, attribute: str, numeric: bool = True) -> None:
+        """A working attribute that inventories don't have."""
+        self._values[attribute] = np.full(self.rows, np.nan if numeric else None, dtype=float if numeric else object)
+        self._origin[attribute] = np.full(self.rows, Origin.MISSING, dtype=np.uint8)
+
+    def missing(self, attribute: str) -> np.ndarray:
+        values = self._values[attribute]
+        return np.isnan(values) if values.dtype == float else pd.isna(values)
+
+    def known(self, attribute: str) -> np.ndarray:
+        return ~self.missing(attribute)
+
+    def is_read(self, attribute: str) -> np.ndarray:
+        """True where the file says it, directly or converted."""
+        origin = self._origin[attribute]
+        return (origin == Origin.READ) | (origin == Origin.CONVERTED)
+
+    def reject(self, attribute: str, where: np.ndarray) -> None:
+        """Take a value out of use; the caller notes the finding."""
+        values = self._values[attribute]
+        values[where] = np.nan if values.dtype == float else None
+        self._origin[attribute][where] = Origin.MISSING
+
+    def fill(
+        self,
+        attribute: str,
+        values,
+        *,
+        rule: str,
+        source: str,
+        where: np.ndarray | None = None,
+        origin: Origin = Origin.ASSUMED,
+        scatter=0.0,
+        low=np.nan,
+        high=np.nan,
+    ) -> np.ndarray:
+        """Fill what is still missing, where the rule has a value; returns the mask filled."""
+        target = self._values[attribute]
+        given = np.broadcast_to(np.asarray(values, dtype=target.dtype), (self.rows,))
+        has = ~np.isnan(given) if target.dtype == float else ~pd.isna(given)
+        mask = self.missing(attribute) & has
+        if where is not None:
+            mask &= where
+        if not mask.any():
+            return mask
+        target[mask] = given[mask]
+        self._origin[attribute][mask] = origin
+
+        def pick(a):
+            a = np.asarray(a, dtype=float)
+            return a[mask] if a.ndim else a
+
+        self.ledger.assumption(
+            attribute,
+            mask,
+            given[mask],
+            rule=rule,
+            source=source,
+            origin=origin,
+            scatter=pick(scatter),
+            low=pick(low),
+            high=pick(high),
+        )
+        if target.dtype == float:
+            self.note_scatter(attribute, mask, pick(scatter))
+        return mask
+
+    def note_scatter(self, attribute: str, mask: np.ndarray, scatter) -> None:
+        spread = self.scatter.setdefault(attribute, np.zeros(self.rows))
+        spread[mask] = scatter
+
+    def group_median(self, attribute: str, by: str) -> np.ndarray:
+        """Median of the values read in the same group, per row; NaN where the group has none."""
+        values = pd.Series(np.where(self.is_read(attribute), self._values[attribute], np.nan))
+        keys = pd.Series(self._values[by], dtype=object)
+        medians = values.groupby(keys).median()
+        return keys.map(medians).to_numpy(dtype=float)
+
+    def group_vote(self, attribute: str, keys: list, least: int, share: float) -> tuple[np.ndarray, np.ndarray]:
+        """(the commonest value read among rows with equal keys, its share), where the vote is clear.
+
+        Clear: at least `least` rows of the group have a value and `share` of them agree.
+        None and NaN elsewhere.
+        """
+        frame = pd.DataFrame({f"k{i}": pd.factorize(np.asarray(key))[0] for i, key in enumerate(keys)})
+        group = frame.groupby(list(frame.columns), sort=False).ngroup().to_numpy()
+        code, names = pd.factorize(np.where(self.is_read(attribute), self._values[attribute], None))
+        winner = np.full(self.rows, None, dtype=object)
+        agreement = np.full(self.rows, np.nan)
+        known = code >= 0
+        if not known.any():
+            return winner, agreement
+        counts = pd.crosstab(group[known], code[known])
+        total = counts.to_numpy().sum(axis=1)
+        best = counts.to_numpy().argmax(axis=1)
+        top = counts.to_numpy().max(axis=1)
+        clear = (total >= least) & (top >= share * total)
+        place = counts.index.get_indexer(group)
+        ok = (place >= 0) & clear[place]
+        winner[ok] = np.asarray(names, dtype=object)[counts.columns.to_numpy()[best[place[ok]]]]
+        agreement[ok] = (top / total)[place[ok]]
+        return winner, agreement

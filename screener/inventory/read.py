@@ -1,0 +1,99 @@
+"""From a file to an Inventory: rows understood, audited, filled, and made into a Fleet."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+
+from screener.inventory import audit, fill_bolts, fill_loads, fill_pipe, fill_ring
+from screener.inventory.build_fleet import build_fleet
+from screener.inventory.gaps import Gaps
+from screener.inventory.mapping_file import read_mapping
+from screener.inventory.match_headers import HeaderMatch, match_headers
+from screener.inventory.open_file import open_table
+from screener.inventory.parse_cells import parse_cells
+from screener.records import Fleet, Ledger, RawTable
+from screener.settings import Settings
+
+
+@dataclass(frozen=True, eq=False)
+class Inventory:
+    """An inventory as read: every row of the table is in `fleet` or has a `reason`.
+
+    reason: object array over the table's rows, "" for joints that can be assessed.
+    gaps: values (SI) and origin codes by attribute, over the table's rows.
+    """
+
+    raw: RawTable
+    match: HeaderMatch
+    joint_id: np.ndarray
+    reason: np.ndarray
+    gaps: Gaps
+    fleet: Fleet
+    ledger: Ledger
+    settings: Settings
+
+    def __len__(self) -> int:
+        return len(self.raw)
+
+
+def read_inventory(
+    path: str | Path,
+    settings: Settings | None = None,
+    *,
+    mapping: str | Path | None = None,
+) -> Inventory:
+    """Read, audit and fill an inventory. Raises InputError when the file can't be used at all."""
+    settings = settings or Settings()
+    ledger = Ledger()
+    raw = open_table(path, sheet=settings.sheet or None, ledger=ledger)
+    given = read_mapping(mapping) if mapping is not None else None
+    match = match_headers(raw, given, ledger)
+    parsed = parse_cells(raw, match, ledger)
+    gaps = Gaps(parsed.values, parsed.origin, len(raw), ledger)
+    column_of = {attribute: raw.headings[k] for attribute, k in parsed.columns.items()}
+    joint_id, repeat = audit.settle_identities(gaps, ledger, raw.row_numbers, column_of, raw.cells)
+    audit.audit_places(ledger, raw.x, raw.y, repeat, settings)
+    audit.audit_rows(gaps, column_of, parsed.as_written, settings)
+    blocked = {"repeats an earlier row exactly": repeat}
+    fill_gaps(gaps, settings, column_of, parsed.as_written, blocked)
+    reason = _first_reason(blocked, len(raw))
+    rows = np.flatnonzero(reason == "")
+    fleet = build_fleet(gaps, joint_id, rows, settings.assessment_year)
+    return Inventory(raw, match, joint_id, reason, gaps, fleet, ledger, settings)
+
+
+def fill_gaps(gaps: Gaps, settings: Settings, column_of, as_written, blocked: dict[str, np.ndarray]) -> None:
+    """Every gap rule in the order in which one needs another's result."""
+    fill_pipe.fill_year_installed(gaps)
+    fill_pipe.fill_size_system(gaps)
+    fill_pipe.fill_outside_diameter(gaps)
+    fill_pipe.check_sizes(gaps, blocked)
+    fill_pipe.fill_material(gaps)
+    fill_pipe.fill_dimension_ratio(gaps)
+    fill_ring.fill_ring_standard(gaps)
+    fill_ring.check_ring_class(gaps)
+    fill_pipe.fill_flange_size(gaps)
+    fill_ring.fill_ring_class(gaps, settings)
+    ring_row = fill_ring.fill_ring_dimensions(gaps)
+    audit.audit_bolts(gaps, ring_row, column_of, as_written)
+    fill_ring.fill_ring_rest(gaps, ring_row)
+    fill_pipe.fill_stub_end(gaps, settings)
+    fill_ring.check_ring_geometry(gaps, blocked)
+    fill_pipe.fill_setting(gaps, settings)
+    fill_bolts.fill_faces(gaps)
+    fill_bolts.fill_bolts(gaps)
+    fill_bolts.fill_torque(gaps, settings)
+    fill_loads.fill_rating_inputs(gaps)
+    fill_loads.fill_operating_pressure(gaps, settings)
+    fill_loads.fill_surge_from_neighbours(gaps)
+    fill_loads.fill_cycles(gaps, settings)
+
+
+def _first_reason(blocked: dict[str, np.ndarray], rows: int) -> np.ndarray:
+    reason = np.full(rows, "", dtype=object)
+    for words, mask in blocked.items():
+        reason[(reason == "") & mask] = words
+    return reason
