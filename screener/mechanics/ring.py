@@ -9,8 +9,11 @@ from enum import IntFlag
 
 import numpy as np
 
-STUBBY_THICKNESS_TO_WIDTH = 0.75
-"""Ring thickness over radial width above which the flat-ring formulas are doubted (see the finite-element study in the tests)."""
+STUBBY_LIMIT = 0.6
+"""t / sqrt(a (b - a)) above which rotation exceeds the flat ring's by more than some 5 % (finite elements, tests/outside)."""
+
+WIDE_LIMIT = 2.0
+"""b / a above which the bore stress is overestimated by more than some 10 % (finite elements, tests/outside)."""
 
 
 class RingReason(IntFlag):
@@ -25,6 +28,7 @@ class RingReason(IntFlag):
     BOLT_CIRCLE_OFF_RING = 32
     CONTACT_OFF_RING = 64
     STUBBY_SECTION = 128
+    WIDE_SECTION = 256
 
 
 BLOCKING_REASONS = RingReason(127)
@@ -38,14 +42,15 @@ RING_REASON_TEXT = {
     RingReason.HUB_BEYOND_BOLT_CIRCLE: "the hub reaches the bolt circle, so the bolts have no lever arm",
     RingReason.BOLT_CIRCLE_OFF_RING: "the bolt circle does not lie between the ring's bore and its outside diameter",
     RingReason.CONTACT_OFF_RING: "the contact with the hub reaches beyond the ring's bore or outside diameter",
-    RingReason.STUBBY_SECTION: "the ring is so thick for its radial width that the flat-ring formulas are doubtful",
+    RingReason.STUBBY_SECTION: "the ring is so thick for its radial width that its rotation and stress exceed the flat-ring formulas by more than 5 %",
+    RingReason.WIDE_SECTION: "the ring is so wide for its bore that the flat-ring formulas overestimate its stress by up to 15 %",
 }
 
 
 def ring_validity(contact_inner_radius, contact_outer_radius, bolt_circle_radius, ring_bore_radius, ring_outer_radius, ring_thickness):
     """Reasons, as an integer array of `RingReason` bits, why the formulas here do not or do not safely apply.
 
-    All arguments are in m, scalar or array. `result & BLOCKING_REASONS` non-zero means NaN results; `STUBBY_SECTION` alone is a doubt.
+    All arguments are in m, scalar or array. `result & BLOCKING_REASONS` non-zero means NaN results; the rest is a doubt.
     """
     r_i, r_o, r_b, a, b, t = np.broadcast_arrays(
         *(np.real(x) for x in (contact_inner_radius, contact_outer_radius, bolt_circle_radius, ring_bore_radius, ring_outer_radius, ring_thickness))
@@ -59,7 +64,8 @@ def ring_validity(contact_inner_radius, contact_outer_radius, bolt_circle_radius
         RingReason.HUB_BEYOND_BOLT_CIRCLE: r_o >= r_b,
         RingReason.BOLT_CIRCLE_OFF_RING: (r_b <= a) | (r_b >= b),
         RingReason.CONTACT_OFF_RING: (r_i < a * (1 - rounding)) | (r_o > b * (1 + rounding)),
-        RingReason.STUBBY_SECTION: t > STUBBY_THICKNESS_TO_WIDTH * (b - a),
+        RingReason.STUBBY_SECTION: t * np.abs(t) > STUBBY_LIMIT**2 * a * (b - a),
+        RingReason.WIDE_SECTION: b > WIDE_LIMIT * a,
     }
     return sum(np.where(failed, int(reason), 0) for reason, failed in checks.items())
 

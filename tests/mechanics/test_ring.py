@@ -172,7 +172,8 @@ def test_an_unknown_input_stays_unknown(name):
         ({"contact_outer_radius": 0.3747}, ring.RingReason.HUB_BEYOND_BOLT_CIRCLE),
         ({"bolt_circle_radius": 0.41}, ring.RingReason.BOLT_CIRCLE_OFF_RING),
         ({"contact_inner_radius": 0.30}, ring.RingReason.CONTACT_OFF_RING),
-        ({"ring_thickness": 0.09}, ring.RingReason.STUBBY_SECTION),
+        ({"ring_thickness": 0.11}, ring.RingReason.STUBBY_SECTION),
+        ({"ring_outer_radius": 0.63}, ring.RingReason.WIDE_SECTION),
     ],
 )
 def test_outside_its_range_the_ring_says_why(change, reason):
