@@ -9,7 +9,6 @@ from screener.inventory.gaps import Gaps
 from screener.records import Severity
 from screener.settings import Settings
 from screener.standards import pipes
-from screener.standards.tables import INCH
 
 
 class Audit:
@@ -251,10 +250,8 @@ def settle_identities(gaps: Gaps, ledger, row_numbers, column_of, cells) -> tupl
     return shown.to_numpy(dtype=object), repeat
 
 
-def audit_places(ledger, x, y, repeat, settings: Settings) -> None:
+def audit_places(ledger, x, y, repeat) -> None:
     """Joints at the very same place."""
-    if x is None:
-        return
     frame = pd.DataFrame({"x": x, "y": y})
     known = frame.notna().all(axis=1).to_numpy() & ~repeat
     twice = known & frame.where(known[:, None]).duplicated(keep="first").to_numpy()
@@ -265,6 +262,3 @@ def audit_places(ledger, x, y, repeat, settings: Settings) -> None:
         problem="another joint has exactly the same coordinates",
         action="both kept; check the position of one of them",
     )
-
-
-__all__ = ["Audit", "INCH", "audit_bolts", "audit_places", "audit_rows", "settle_identities"]

@@ -14,7 +14,7 @@ from screener.inventory.mapping_file import read_mapping
 from screener.inventory.match_headers import HeaderMatch, match_headers
 from screener.inventory.open_file import open_table
 from screener.inventory.parse_cells import parse_cells
-from screener.records import Fleet, Ledger, RawTable
+from screener.records import Fleet, Ledger, RawTable, Severity
 from screener.settings import Settings
 
 
@@ -38,6 +38,22 @@ class Inventory:
     def __len__(self) -> int:
         return len(self.raw)
 
+    @property
+    def place(self) -> tuple[np.ndarray | None, np.ndarray | None]:
+        """(x, y) of each row in the file's own coordinates: its geometry, else its coordinate columns."""
+        if self.raw.x is not None:
+            return self.raw.x, self.raw.y
+        x, y = self.gaps["x_coordinate"], self.gaps["y_coordinate"]
+        known = np.isfinite(x) & np.isfinite(y)
+        if not known.any():
+            return None, None
+        return np.where(known, x, np.nan), np.where(known, y, np.nan)
+
+    @property
+    def crs(self) -> str | None:
+        """Coordinate reference system of `place`, None where the file does not say."""
+        return self.raw.crs
+
 
 def read_inventory(
     path: str | Path,
@@ -55,7 +71,18 @@ def read_inventory(
     gaps = Gaps(parsed.values, parsed.origin, len(raw), ledger)
     column_of = {attribute: raw.headings[k] for attribute, k in parsed.columns.items()}
     joint_id, repeat = audit.settle_identities(gaps, ledger, raw.row_numbers, column_of, raw.cells)
-    audit.audit_places(ledger, raw.x, raw.y, repeat, settings)
+    x, y = (raw.x, raw.y) if raw.x is not None else (gaps["x_coordinate"], gaps["y_coordinate"])
+    audit.audit_places(ledger, x, y, repeat)
+    if raw.x is None and gaps.known("x_coordinate").any():
+        ledger.finding(
+            "coordinates_without_system",
+            Severity.NOTES,
+            None,
+            attribute="x_coordinate",
+            column=column_of.get("x_coordinate", ""),
+            problem="the file does not say which coordinate reference system its coordinates are in",
+            action="coordinates kept as written; the layer carries no reference system",
+        )
     audit.audit_rows(gaps, column_of, parsed.as_written, settings)
     blocked = {"repeats an earlier row exactly": repeat}
     fill_gaps(gaps, settings, column_of, parsed.as_written, blocked)

@@ -1,0 +1,5 @@
+import sys
+
+from screener.cli import main
+
+sys.exit(main())
