@@ -5,7 +5,7 @@ from dataclasses import dataclass
 
 import numpy as np
 from scipy.sparse.linalg import splu
-from skfem import Basis, BilinearForm, ElementQuad2, ElementVector, FacetBasis, LinearForm, MeshQuad
+from skfem import Basis, BilinearForm, ElementQuad2, ElementTriP2, ElementVector, FacetBasis, LinearForm, MeshQuad, MeshTri
 
 
 @dataclass
@@ -79,6 +79,35 @@ def contact_form(bed_stiffness):
 def solve_elastic_ring(r_i, r_o, r_b, a, b, t, modulus, poisson, hub_modulus, hub_thickness, load_width, elements_through=8):
     """Ring under unit total bolt load (1 N); everything in m, Pa. The forms leave the common factor 2 pi out."""
     mesh, basis, contact_basis, nut_basis, half = ring_basis(r_i, r_o, r_b, a, b, t, load_width, elements_through)
+    u, sinking, stiffness, d = settle(basis, contact_basis, nut_basis, half, modulus, poisson, hub_modulus / hub_thickness)
+    return ring_result(mesh, basis, contact_basis, d, stiffness, u, sinking, r_b, t)
+
+
+def solve_polygon_ring(points, triangles, contact_height, r_i, r_o, r_b, nut_height, half, modulus, poisson, bed_stiffness):
+    """Any section on a given triangle mesh: lever arm [m], best-fitting rotation [rad/N], nodal displacements' basis, hoop stress at the nodes."""
+    mesh = MeshTri(points.T, triangles.T)
+    element = ElementVector(ElementTriP2())
+    basis = Basis(mesh, element, intorder=4)
+    edge = 1e-6 * np.ptp(points)
+    facets = [
+        mesh.facets_satisfying(lambda x, z=z, low=low, high=high: (np.abs(x[1] - z) < edge) & (x[0] > low) & (x[0] < high), boundaries_only=True)
+        for z, low, high in ((contact_height, r_i, r_o), (nut_height, r_b - half, r_b + half))
+    ]
+    contact_basis, nut_basis = (FacetBasis(mesh, element, facets=f, intorder=6) for f in facets)
+    u, sinking, _, d = settle(basis, contact_basis, nut_basis, half, modulus, poisson, bed_stiffness)
+    r = contact_basis.global_coordinates()[0]
+    push = sinking * r * contact_basis.dx
+    x, weight = basis.global_coordinates(), basis.dx
+    shift = [np.sum(weight * c) / np.sum(weight) for c in x]
+    field = np.asarray(basis.interpolate(u))
+    mean = [np.sum(weight * f) / np.sum(weight) for f in field]
+    rotation = np.sum(weight * ((x[1] - shift[1]) * (field[0] - mean[0]) - (x[0] - shift[0]) * (field[1] - mean[1]))) / np.sum(weight * ((x[0] - shift[0]) ** 2 + (x[1] - shift[1]) ** 2))
+    stress = von_mises(np.einsum("ij,j...->i...", d, strain(basis.interpolate(u), _Coordinates(basis))))
+    return r_b - np.sum(push * r) / np.sum(push), rotation, x, stress
+
+
+def settle(basis, contact_basis, nut_basis, half, modulus, poisson, bed_stiffness):
+    """Displacements, sinking at the contact points, ring stiffness and elasticity once the one-sided contact has settled."""
     d = stiffness_matrix(modulus, poisson)
 
     @BilinearForm
@@ -87,7 +116,7 @@ def solve_elastic_ring(r_i, r_o, r_b, a, b, t, modulus, poisson, hub_modulus, hu
 
     stiffness = elastic.assemble(basis)
     load = load_vector(nut_basis, half)
-    bed = contact_form(hub_modulus / hub_thickness)
+    bed = contact_form(bed_stiffness)
     pushing = np.ones(contact_basis.global_coordinates()[0].shape)
     for _ in range(50):
         u = splu((stiffness + bed.assemble(contact_basis, pushing=pushing)).tocsc()).solve(load)
@@ -98,7 +127,7 @@ def solve_elastic_ring(r_i, r_o, r_b, a, b, t, modulus, poisson, hub_modulus, hu
         pushing = now
     else:
         raise AssertionError("contact did not settle")
-    return ring_result(mesh, basis, contact_basis, d, stiffness, u, np.maximum(sinking, 0), r_b, t)
+    return u, np.maximum(sinking, 0), stiffness, d
 
 
 def ring_result(mesh, basis, contact_basis, d, stiffness, u, sinking, r_b, t):
