@@ -116,3 +116,9 @@ def common_time_step(travel_time, reaches):
     c = np.asarray(travel_time, dtype=float) / np.asarray(reaches)
     step = np.sum(c**2) / np.sum(c)
     return float(step), c / step - 1
+
+
+def kinematic_viscosity(temperature_c):
+    """Kinematic viscosity of water [m2/s], 0 to 100 C: 2.414e-5 10^(247.8/(T - 140)) Pa s over the density (Vogel form, from memory; within 2.5 %)."""
+    kelvin = np.asarray(temperature_c, dtype=float) + 273.15
+    return 2.414e-5 * 10 ** (247.8 / (kelvin - 140)) / water_density(temperature_c)

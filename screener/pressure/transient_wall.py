@@ -23,7 +23,8 @@ class CreepingWall:
         self.decay = np.exp(-grid.time_step / time)
         part = time / grid.time_step * (1 - self.decay)
         stress = (sections.factor * sections.inside_diameter / (2 * sections.wall))[at] * density * GRAVITY
-        compliance = sections.creep_compliance[:, at] * stress  # strain per metre of head, once the element has acted
+        per_pascal = sections.creep_compliance[:, at]
+        compliance = np.where(per_pascal > 0, per_pascal * stress, 0.0)  # strain per metre of head, once the element has acted
         self.of_new, self.of_old = compliance * (1 - part), compliance * (part - self.decay)
         self.weight = 2 * grid.wave_speed**2 / GRAVITY
         self.stiffening = 1 + self.weight * self.of_new.sum(axis=0)
