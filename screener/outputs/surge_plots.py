@@ -218,7 +218,7 @@ def _title(axes, run: SurgeRun) -> None:
 
 def _save(figure, axes, path: Path) -> Path:
     axes.grid(alpha=0.25)
-    axes.legend(fontsize=8, framealpha=0.9)
+    figure.legend(*axes.get_legend_handles_labels(), loc="outside lower center", ncols=4, fontsize=8, frameon=False)
     with whole_file(path) as temporary:
         figure.savefig(temporary, dpi=140, metadata={"Software": None})
     return path

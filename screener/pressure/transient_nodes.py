@@ -115,7 +115,6 @@ class Cavities:
     largest_volume: np.ndarray = field(init=False)
     any_open: bool = False
     first_time: float = float("nan")
-    lost_volume: float = 0.0
 
     def __post_init__(self) -> None:
         self.volume = np.zeros_like(self.vapour_head)
@@ -127,28 +126,26 @@ class Cavities:
         if not self.any_open and not low.any():
             return
         at = np.flatnonzero((low | (self.volume > 0))[1:-1]) + 1
-        inflow = (c_plus[at - 1] - self.vapour_head[at]) / b_plus[at - 1]
-        outflow = (self.vapour_head[at] - c_minus[at]) / b_minus[at]
-        grown = self.volume[at] + step * (outflow + taken[at] - inflow)
-        held = grown > 0
-        self.lost_volume -= float(grown[~held].sum())
-        self.volume[at] = np.where(held, grown, 0.0)
-        stay = at[held]
-        head[stay], flow_in[stay], flow_out[stay] = self.vapour_head[stay], inflow[held], outflow[held]
+        low_head, before = self.vapour_head[at], self.volume[at]
+        grown = before + step * ((low_head - c_minus[at]) / b_minus[at] + taken[at] - (c_plus[at - 1] - low_head) / b_plus[at - 1])
+        s = 1 / b_plus[at - 1] + 1 / b_minus[at]
+        # a cavity that would close within the step takes in just its own volume of water; the head for that lies above vapour
+        head[at] = np.where(grown > 0, low_head, low_head - np.minimum(grown, 0.0) / (s * step))
+        flow_in[at] = (c_plus[at - 1] - head[at]) / b_plus[at - 1]
+        flow_out[at] = (head[at] - c_minus[at]) / b_minus[at]
+        self.volume[at] = np.maximum(grown, 0.0)
         self._remember(time)
 
-    def hold_end(self, node: int, head: float, outside: float, c: float, b: float, time: float, step: float) -> bool:
-        """Whether a cavity holds an end of the main in this step; its volume is brought up to date.
+    def hold_end(self, node: int, outside: float, c: float, b: float, time: float, step: float) -> float:
+        """Flow into the main from an end with a cavity, whose volume is brought up to date.
 
         outside: water that reaches the node from beyond the main at vapour head [m3/s]; c, b: the main's line, H = c + b (flow into it).
         """
-        if not self.allowed[node] or not (head < self.vapour_head[node] or self.volume[node] > 0):
-            return False
         grown = self.volume[node] + step * ((self.vapour_head[node] - c) / b - outside)
-        self.lost_volume -= min(grown, 0.0)
+        flow = (self.vapour_head[node] - c) / b - min(grown, 0.0) / step
         self.volume[node] = max(grown, 0.0)
         self._remember(time)
-        return grown > 0
+        return flow
 
     def _remember(self, time: float) -> None:
         np.maximum(self.largest_volume, self.volume, out=self.largest_volume)

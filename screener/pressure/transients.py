@@ -137,19 +137,20 @@ class _State:
         self.head = head
 
     def _ends(self, head, c_plus, b_plus, c_minus, b_minus, time, step) -> None:
-        up, down, low = self.event.upstream, self.event.downstream, self.cavities.vapour_head
+        up, down, cavities = self.event.upstream, self.event.downstream, self.cavities
+        low, open_volume = cavities.vapour_head, cavities.volume
         head[0], self.flow_in[0] = up.upstream(c_minus, b_minus, time, step)
         self.flow_out[0] = self.flow_in[0]
-        if self.cavities.allowed[0] and (head[0] < low[0] or self.cavities.volume[0] > 0):
-            outside = up.flow_at_head(low[0], time)
-            if self.cavities.hold_end(0, head[0], outside, c_minus, b_minus, time, step):
-                head[0], self.flow_in[0], self.flow_out[0] = low[0], outside, (low[0] - c_minus) / b_minus
+        if cavities.allowed[0] and (head[0] < low[0] or open_volume[0] > 0):
+            self.flow_in[0] = up.flow_at_head(low[0], time)
+            self.flow_out[0] = cavities.hold_end(0, self.flow_in[0], c_minus, b_minus, time, step)
+            head[0] = c_minus + b_minus * self.flow_out[0]
         head[-1], self.flow_out[-1] = down.downstream(c_plus, b_plus, time, step)
         self.flow_in[-1] = self.flow_out[-1]
-        if self.cavities.allowed[-1] and (head[-1] < low[-1] or self.cavities.volume[-1] > 0):
-            outside = down.flow_at_head(low[-1], time)
-            if self.cavities.hold_end(-1, head[-1], -outside, c_plus, b_plus, time, step):
-                head[-1], self.flow_out[-1], self.flow_in[-1] = low[-1], outside, (c_plus - low[-1]) / b_plus
+        if cavities.allowed[-1] and (head[-1] < low[-1] or open_volume[-1] > 0):
+            self.flow_out[-1] = down.flow_at_head(low[-1], time)
+            self.flow_in[-1] = -cavities.hold_end(-1, -self.flow_out[-1], c_plus, b_plus, time, step)
+            head[-1] = c_plus - b_plus * self.flow_in[-1]
 
     def stored_water(self) -> float:
         """Water in the main above that at zero head, less what cavities and air hold [m3]."""
