@@ -1,16 +1,15 @@
-"""A run's folder: every file appears whole or not at all."""
+"""A run's folder: making it, stamping it, finding it again."""
 
 from __future__ import annotations
 
 import hashlib
 import json
-import os
-import tempfile
-from collections.abc import Iterator
-from contextlib import contextmanager
 from pathlib import Path
 
+from screener.files import whole_file, write_text
 from screener.records import InputError
+
+__all__ = ["file_hash", "make_folder", "read_run", "whole_file", "write_json", "write_text"]
 
 
 def make_folder(path: str | Path) -> Path:
@@ -23,29 +22,6 @@ def make_folder(path: str | Path) -> Path:
     except OSError as problem:
         raise InputError(f"{folder}: the output folder can't be made ({problem.strerror})") from None
     return folder
-
-
-@contextmanager
-def whole_file(path: str | Path) -> Iterator[Path]:
-    """Write to a temporary neighbour that takes the file's place when the block ends well."""
-    target = Path(path)
-    handle, name = tempfile.mkstemp(dir=target.parent, prefix=f".{target.stem}.", suffix=target.suffix)
-    os.close(handle)
-    os.unlink(name)  # some writers refuse a file that exists
-    try:
-        yield Path(name)
-        os.replace(name, target)
-    except PermissionError as problem:
-        raise InputError(f"{target}: can't be written; is it open in another program? ({problem.strerror})") from None
-    finally:
-        for leftover in (name, f"{name}-journal", f"{name}-wal", f"{name}-shm"):
-            if os.path.exists(leftover):
-                os.unlink(leftover)
-
-
-def write_text(path: Path, text: str) -> None:
-    with whole_file(path) as temporary:
-        temporary.write_text(text, encoding="utf-8")
 
 
 def write_json(path: Path, content: dict) -> None:

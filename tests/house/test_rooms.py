@@ -9,22 +9,24 @@ import pytest
 ROOT = Path(__file__).resolve().parents[2]
 PACKAGE = ROOT / "screener"
 
-FOUNDATION = {"records", "settings", "columns", "units"}
+FOUNDATION = {"records", "settings", "columns", "units", "files"}
 MAY_USE = {
     "records": set(),
     "settings": {"records"},
     "columns": {"records"},
+    "files": {"records"},
+    "limit_names": set(),
     "units": {"records", "columns"},
     "standards": {"records"},
     "mechanics": {"records"},
     "pressure": {"records"},
     "fatigue": {"records"},
     "inventory": FOUNDATION | {"standards"},
-    "limits": {"records", "standards", "mechanics", "pressure", "fatigue"},
+    "limits": {"records", "limit_names", "standards", "mechanics", "pressure", "fatigue"},
     "likelihood": {"records", "limits", "mechanics"},
     "priority": {"records", "columns", "likelihood", "limits", "mechanics"},
-    "screening": FOUNDATION | {"inventory", "standards", "mechanics", "pressure", "fatigue", "limits", "likelihood", "priority"},
-    "outputs": FOUNDATION | {"inventory", "standards", "mechanics", "pressure", "fatigue", "limits", "likelihood", "priority", "screening"},
+    "screening": FOUNDATION | {"inventory", "standards", "mechanics", "pressure", "fatigue", "limits", "limit_names", "likelihood", "priority"},
+    "outputs": FOUNDATION | {"inventory", "standards", "mechanics", "pressure", "fatigue", "limits", "limit_names", "likelihood", "priority", "screening"},
     "cli": {"records", "settings", "screening", "outputs", "inventory", "pressure"},
     "__main__": {"cli"},
     "__init__": set(),
