@@ -35,7 +35,7 @@ LIMIT_STATES = {
     ),
     "face_operating": LimitState(
         "face, operating",
-        "Face stress needed to stay tight at operating pressure over the face stress that is left.",
+        "Clamp force needed to keep the face tight at operating pressure over the clamp force that is left.",
         "Joint equilibrium with relaxed clamp; required stress m P after ASME BPVC VIII-1 Appendix 2.",
     ),
     "face_recurrent": LimitState(

@@ -192,9 +192,10 @@ def assess_limits(fleet: Fleet, safety_factor: float, ledger: Ledger) -> LimitSt
     pipe_rating = pipe_wall.pressure_rating(pipe.hydrostatic_design_stress, pipe.dimension_ratio, pipe.temperature_factor)
 
     def face_need(pressure):
-        force = clamp.face_force(clamped.force_now, separating_load(fleet, pressure), clamped.load_factor)
-        with np.errstate(divide="ignore"):
-            return face.required_stress_factor * pressure * face.contact_area / force
+        # Clamp needed to keep m P on the face over the clamp there is: 1 where the face stress is just m P, finite beyond opening.
+        needed = face.required_stress_factor * pressure * face.contact_area
+        unloaded = (1 - clamped.load_factor) * separating_load(fleet, pressure)
+        return (needed + unloaded) / clamped.force_now
 
     stress = ring.loose_ring_stress(design_load(recurrent), short.lever_arm, r.thickness, bore, outer) * hole_factor
     utilization = {

@@ -254,7 +254,8 @@ def audit_places(ledger, x, y, repeat) -> None:
     """Joints at the very same place."""
     frame = pd.DataFrame({"x": x, "y": y})
     known = frame.notna().all(axis=1).to_numpy() & ~repeat
-    twice = known & frame.where(known[:, None]).duplicated(keep="first").to_numpy()
+    twice = np.zeros(len(frame), dtype=bool)
+    twice[known] = frame[known].duplicated(keep="first").to_numpy()
     ledger.finding(
         "place_used_twice",
         Severity.NOTES,

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import warnings
 from pathlib import Path
 
 import geopandas
@@ -54,7 +55,10 @@ def write_geopackage(screening: Screening, path: Path, mains: geopandas.GeoDataF
     joints, placeless = layer_frame(screening)
     with whole_file(path) as temporary:
         metadata = {"layer_metadata": {"cautions": " ".join(CAUTIONS)}}
-        pyogrio.write_dataframe(joints, temporary, layer="joints", driver="GPKG", **metadata)
+        with warnings.catch_warnings():
+            # A file without a reference system gives a layer without one; the finding says so already.
+            warnings.filterwarnings("ignore", message="'crs' was not provided")
+            pyogrio.write_dataframe(joints, temporary, layer="joints", driver="GPKG", **metadata)
         if mains is not None:
             pyogrio.write_dataframe(mains, temporary, layer="mains", driver="GPKG", append=True)
         if len(placeless):

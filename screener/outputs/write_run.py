@@ -79,7 +79,7 @@ def guard_formulas(frame: pd.DataFrame) -> pd.DataFrame:
     for name in frame.columns:
         if frame[name].dtype.kind in "OUT" or isinstance(frame[name].dtype, (pd.StringDtype, pd.CategoricalDtype)):
             text = frame[name].astype(object)
-            risky = text.map(lambda v: isinstance(v, str) and v[:1] in "=+-@\t\r" and not _is_number(v))
+            risky = text.map(lambda v: isinstance(v, str) and v.startswith(("=", "+", "-", "@", "\t", "\r")) and not _is_number(v))
             if risky.any():
                 frame[name] = text.where(~risky, "'" + text.astype(str))
     return frame
