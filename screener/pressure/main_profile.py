@@ -75,66 +75,66 @@ def read_main(path: str | Path) -> Main:
     assumed: list[str] = []
     top = Table(read_toml(path), str(path), assumed)
     chainage, elevation, pipe = _read_profile(top, path, assumed)
-    part = {name: part_of(top, name, assumed) for name in ("water", "run", "creep")}
-    temperature, density, bulk_modulus, atmosphere = _read_water(part["water"])
-    creep = _read_creep(part["creep"])
+    water, run, creep = (part_of(top, name, assumed) for name in ("water", "run", "creep"))
+    in_water = _read_water(water)
     joint_id, joint_chainage = _read_joints(top, path, assumed)
-    run = part["run"]
-    history = run.numbers("history_chainage", "length", default=(chainage[0], chainage[-1]), most=50)
-    if ((history < chainage[0]) | (history > chainage[-1])).any():
-        raise InputError(f"{path}: run: a history point lies beyond the ends of the main")
-    main = Main(
-        name=top.text("name", default=path.stem),
-        chainage=chainage,
-        elevation=elevation,
-        pipe=pipe,
-        temperature_c=temperature,
-        density=density,
-        bulk_modulus=bulk_modulus,
-        atmospheric_pressure=atmosphere,
-        creep_compliance=creep[0],
-        retardation_time=creep[1],
-        upstream=read_end(top, "upstream", density, assumed),
-        downstream=read_end(top, "downstream", density, assumed),
-        demands=read_devices(top, "demand", chainage, assumed),
-        air_valves=read_devices(top, "air_valve", chainage, assumed),
-        joint_id=joint_id,
-        joint_chainage=joint_chainage,
-        history_chainage=history,
-        duration=run.number("duration", "time", low=1e-3, high=86_400),
-        reaches=int(run.number("reaches", "ratio", default=200.0, low=2, high=5000, note="200 reaches")),
-        largest_speed_change=run.number("largest_speed_change", "ratio", default=0.05, low=1e-4, high=0.5),
-        unsteady_friction=run.flag("unsteady_friction", False),
-        modulus_multipliers=run.numbers("modulus_multipliers", "ratio", default=(1.0,), most=5),
-        assumed=(),
-    )
-    if len(main.modulus_multipliers) == 0 or ((main.modulus_multipliers < 0.1) | (main.modulus_multipliers > 10)).any():
-        raise InputError(f"{path}: run: modulus_multipliers are to be one to five numbers from 0.1 to 10")
-    for table in (*part.values(), top):
+    read = {
+        "name": top.text("name", default=path.stem),
+        "upstream": read_end(top, "upstream", in_water["density"], assumed),
+        "downstream": read_end(top, "downstream", in_water["density"], assumed),
+        "demands": read_devices(top, "demand", chainage, assumed),
+        "air_valves": read_devices(top, "air_valve", chainage, assumed),
+        **in_water,
+        **_read_creep(creep),
+        **_read_run(run, chainage),
+    }
+    for table in (water, run, creep, top):
         table.done()
-    object.__setattr__(main, "assumed", tuple(assumed))
-    return main
+    return Main(
+        chainage=chainage, elevation=elevation, pipe=pipe, joint_id=joint_id, joint_chainage=joint_chainage, assumed=tuple(assumed), **read
+    )  # fmt: skip
 
 
 # ---------------------------------------------------------------- parts of the file
 
 
-def _read_water(table: Table):
+def _read_water(table: Table) -> dict:
     temperature = table.number("temperature", "temperature", default=15.0, low=0.0, high=60.0, note="water at 15 C")
-    density = table.number("density_kg_per_m3", "ratio", default=float(water_density(temperature)), low=900.0, high=1200.0)
-    bulk = table.number("bulk_modulus", "pressure", default=float(water_bulk_modulus(temperature)), low=1e8, high=5e9)
-    atmosphere = table.number("atmospheric_pressure", "pressure", default=ATMOSPHERE, low=4e4, high=1.2e5, note="atmospheric pressure 101.325 kPa")
-    return temperature, density, bulk, atmosphere
+    return {
+        "temperature_c": temperature,
+        "density": table.number("density_kg_per_m3", "ratio", default=float(water_density(temperature)), low=900.0, high=1200.0),
+        "bulk_modulus": table.number("bulk_modulus", "pressure", default=float(water_bulk_modulus(temperature)), low=1e8, high=5e9),
+        "atmospheric_pressure": table.number(
+            "atmospheric_pressure", "pressure", default=ATMOSPHERE, low=4e4, high=1.2e5, note="atmospheric pressure 101.325 kPa"
+        ),
+    }
 
 
-def _read_creep(table: Table):
+def _read_run(table: Table, chainage: np.ndarray) -> dict:
+    history = table.numbers("history_chainage", "length", default=(chainage[0], chainage[-1]), most=50)
+    if len(history) == 0 or ((history < chainage[0]) | (history > chainage[-1])).any():
+        raise InputError(f"{table.where}: history_chainage is empty or has a point beyond the ends of the main")
+    multipliers = table.numbers("modulus_multipliers", "ratio", default=(1.0,), most=5)
+    if len(multipliers) == 0 or ((multipliers < 0.1) | (multipliers > 10)).any():
+        raise InputError(f"{table.where}: modulus_multipliers are to be one to five numbers from 0.1 to 10")
+    return {
+        "history_chainage": history,
+        "duration": table.number("duration", "time", low=1e-3, high=86_400),
+        "reaches": int(table.number("reaches", "ratio", default=200.0, low=2, high=5000, note="200 reaches")),
+        "largest_speed_change": table.number("largest_speed_change", "ratio", default=0.05, low=1e-4, high=0.5),
+        "unsteady_friction": table.flag("unsteady_friction", False),
+        "modulus_multipliers": multipliers,
+    }
+
+
+def _read_creep(table: Table) -> dict:
     compliance = table.numbers("compliance", "compliance", default=(), most=20)
     time = table.numbers("retardation", "time", default=(), most=20)
     if len(compliance) != len(time):
         raise InputError(f"{table.where}: {len(compliance)} compliances for {len(time)} retardation times")
     if (compliance <= 0).any() or (time <= 0).any():
         raise InputError(f"{table.where}: compliances and retardation times are to be above 0")
-    return compliance, time
+    return {"creep_compliance": compliance, "retardation_time": time}
 
 
 def _read_profile(top: Table, path: Path, assumed: list[str]):
@@ -232,18 +232,22 @@ def _once(assumed: list[str], text: str) -> None:
 
 
 def _read_joints(top: Table, path: Path, assumed: list[str]):
+    """Joints under [[joint]], or in a table beside, whose other columns do not matter."""
     top.used.add("joint")
     joints = top.values.get("joint", [])
-    if isinstance(joints, dict):
+    from_table = isinstance(joints, dict)
+    if from_table:
         table = Table(joints, f"{path}: joint", assumed)
-        rows = read_rows(beside(path, table.text("file"), table.where), MOST_JOINTS)
+        source = beside(path, table.text("file"), table.where)
+        rows, where = read_rows(source, MOST_JOINTS), f"{source}: row"
         table.done()
     else:
-        rows = tables_of(top, "joint", MOST_JOINTS)
+        rows, where = tables_of(top, "joint", MOST_JOINTS), f"{path}: joint"
     names, places = [], []
     for k, row in enumerate(rows):
-        table = Table(row, f"{path}: joint {k + 1}", assumed)
+        table = Table(row, f"{where} {k + 1}", assumed)
         names.append(table.text("id"))
         places.append(table.number("chainage", "length"))
-        table.done()
+        if not from_table:
+            table.done()
     return np.array(names, dtype=object), np.array(places, dtype=float)

@@ -169,8 +169,17 @@ def _cautions(main: Main, event: Event, result: Transient, place: list[float]) -
         found.append(f"the pressure falls below atmospheric between chainage {suction.min():.0f} and {suction.max():.0f} m, where air or ground water can be drawn in")
     if (change := result.grid.worst_change) > main.largest_speed_change:
         found.append(f"a wave speed was changed by {100 * change:.1f} %, more than the {100 * main.largest_speed_change:g} % allowed; ask for more reaches or join short stretches")
+    if result.grid.short.any():
+        found.append(
+            f"{int(result.grid.short.sum())} stretches shorter than half a reach are one reach each, which lengthens a wave's way by "
+            f"{100 * result.grid.added_travel:.1f} %; pressures inside them are not resolved"
+        )
     if abs(result.mass_error) > 0.01:
         found.append(f"the water balance is off by {100 * result.mass_error:.2g} %")
+    if event.upstream.kind == "pumps":
+        share = result.steady.flow_in[0] / (event.upstream.number * event.upstream.rated_flow)
+        if not 0.5 <= share <= 1.3:
+            found.append(f"the pumps start at {100 * share:.0f} % of their rated flow, where a curve through shut-off and rated point is a guess")
     if any(valve.opened for valve in event.air_valves):
         found.append("an air valve opened: pressures after that rest on its size and on air that stays where it entered")
     if any(isinstance(demand, ConstantDemand) for demand in event.demands):

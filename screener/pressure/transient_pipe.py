@@ -107,14 +107,15 @@ def front_attenuation(friction, velocity, distance, diameter, speed):
     return 1 - np.tanh(friction * velocity * distance / (4 * diameter * speed))
 
 
-def common_time_step(travel_time, reaches):
+def common_time_step(travel_time, reaches, weight=1.0):
     """Time step for pipes in series, and the change of wave speed that each then needs.
 
     travel_time: L/a per pipe [s]; reaches: whole number of reaches per pipe. With a' = a (1 + phi) = L/(N dt), the step that makes
-    sum(phi^2) least is dt = sum(c^2)/sum(c), c = travel_time/reaches; phi = c/dt - 1. Wave-speed adjustment of Wylie and Streeter.
+    sum(w phi^2) least is dt = sum(w c^2)/sum(w c), c = travel_time/reaches; phi = c/dt - 1. Wave-speed adjustment of Wylie and
+    Streeter, where the weights w are one.
     """
     c = np.asarray(travel_time, dtype=float) / np.asarray(reaches)
-    step = np.sum(c**2) / np.sum(c)
+    step = np.sum(weight * c**2) / np.sum(weight * c)
     return float(step), c / step - 1
 
 

@@ -32,7 +32,8 @@ def reach_friction(sections: Sections, grid: Grid, flow, viscosity: float) -> np
     """Darcy factor per reach: as stated, or from the roughness at the reach's steady flow."""
     speed = np.abs(flow) / grid.area
     diameter = sections.inside_diameter[grid.section]
-    reynolds = np.where(speed > 0, speed * diameter / viscosity, RESTING_REYNOLDS)
+    reynolds = speed * diameter / viscosity
+    reynolds = np.where(reynolds > 1e-3, reynolds, RESTING_REYNOLDS)
     stated = sections.friction_factor[grid.section]
     rough = np.where(np.isfinite(stated), 0.0, sections.roughness[grid.section])
     return np.where(np.isfinite(stated), stated, friction_factor(reynolds, rough / diameter))

@@ -96,7 +96,7 @@ class _State:
         allowed[valves] = False
         allowed[[0, -1]] &= [event.upstream.kind != "reservoir", event.downstream.kind != "reservoir"]
         self.cavities = Cavities(event.vapour_head, allowed)
-        self.taken = np.zeros(len(steady.head))
+        self.taken = steady.flow_in - steady.flow_out
 
     def lines(self):
         """H = c_plus - b_plus Q at the end of each reach, H = c_minus + b_minus Q at its start."""
@@ -161,6 +161,34 @@ class _State:
         return float(elastic.sum() + creep - empty)
 
 
+class _Record:
+    """What is kept of a run while it goes on."""
+
+    def __init__(self, state: _State, steady: Steady, steps: int) -> None:
+        self.state, self.places = state, state.event.history
+        self.highest, self.lowest, self.before_cavity = steady.head.copy(), steady.head.copy(), None
+        self.history, self.end_flow, self.net = np.empty((steps + 1, len(self.places))), np.empty((steps + 1, 2)), np.empty(steps + 1)
+        self.stored = state.stored_water()
+        self.keep(0)
+
+    def keep(self, k: int) -> None:
+        state = self.state
+        if self.before_cavity is None and state.cavities.any_open:
+            self.before_cavity = self.highest.copy()
+        np.maximum(self.highest, state.head, out=self.highest)
+        np.minimum(self.lowest, state.head, out=self.lowest)
+        self.history[k] = state.head[self.places]
+        self.end_flow[k] = state.flow_in[0], state.flow_out[-1]
+        self.net[k] = self.end_flow[k, 0] - self.end_flow[k, 1] - state.taken.sum()
+
+    def mass_error(self) -> float:
+        step = self.state.grid.time_step
+        gained = step * (self.net.sum() - (self.net[0] + self.net[-1]) / 2)
+        moved = step * np.abs(self.end_flow[1:]).sum()
+        missing = gained - (self.state.stored_water() - self.stored)
+        return float(missing / max(moved, abs(gained), np.finfo(float).tiny))
+
+
 def solve_transient(event: Event, progress=None) -> Transient:
     """Run the event. progress: called with the share done, now and then."""
     grid = event.grid
@@ -168,41 +196,25 @@ def solve_transient(event: Event, progress=None) -> Transient:
     event.upstream.start(steady.head[0], steady.flow_in[0])
     event.downstream.start(steady.head[-1], steady.flow_out[-1])
     state = _State(event, steady)
-    state.taken[:] = steady.flow_in - steady.flow_out
     steps = int(np.ceil(event.duration / grid.time_step - 1e-9))
-    highest, lowest, before_cavity = steady.head.copy(), steady.head.copy(), None
-    history, end_flow = np.empty((steps + 1, len(event.history))), np.empty((steps + 1, 2))
-    history[0], end_flow[0] = steady.head[event.history], (steady.flow_in[0], steady.flow_out[-1])
-    stored, net, taken = state.stored_water(), np.empty(steps + 1), state.taken.sum()
-    net[0] = steady.flow_in[0] - steady.flow_out[-1] - taken
-    moved = 0.0
+    record = _Record(state, steady, steps)
     for k in range(1, steps + 1):
         state.advance(k * grid.time_step)
-        if before_cavity is None and state.cavities.any_open:
-            before_cavity = highest.copy()
-        np.maximum(highest, state.head, out=highest)
-        np.minimum(lowest, state.head, out=lowest)
-        history[k] = state.head[event.history]
-        end_flow[k] = state.flow_in[0], state.flow_out[-1]
-        net[k] = end_flow[k, 0] - end_flow[k, 1] - state.taken.sum()
-        moved += abs(end_flow[k, 0]) + abs(end_flow[k, 1])
-        if progress is not None and k % 500 == 0:
+        record.keep(k)
+        if progress is not None and (k % 500 == 0 or k == steps):
             progress(k / steps)
-    gained = grid.time_step * (net.sum() - (net[0] + net[-1]) / 2)
-    missing = gained - (state.stored_water() - stored)
-    scale = max(moved * grid.time_step, abs(gained), np.finfo(float).tiny)
     return Transient(
         grid=grid,
         elevation=event.elevation,
         steady=steady,
-        maximum_head=highest,
-        minimum_head=lowest,
-        maximum_before_cavity=highest if before_cavity is None else before_cavity,
+        maximum_head=record.highest,
+        minimum_head=record.lowest,
+        maximum_before_cavity=record.highest if record.before_cavity is None else record.before_cavity,
         time=grid.time_step * np.arange(steps + 1),
-        history_head=history,
-        end_flow=end_flow,
+        history_head=record.history,
+        end_flow=record.end_flow,
         cavity_volume=state.cavities.largest_volume,
         first_cavity_time=state.cavities.first_time,
-        mass_error=float(missing / scale),
+        mass_error=record.mass_error(),
         density=event.density,
     )

@@ -265,3 +265,16 @@ def test_grid_convergence_of_a_closing_valve_with_friction():
     errors = [np.abs(heads(n) - reference).max() for n in (25, 50, 100, 200)]
     assert all(coarse / fine > 1.8 for coarse, fine in zip(errors, errors[1:], strict=False))
     assert errors[-1] < 0.02
+
+
+def test_unsteady_friction_leaves_the_first_front_and_damps_the_rest():
+    """Brunone's loss in Vitkovsky's form is nil in a front that stops the flow (dV/dt = -a |dV/dx|) and doubles where flow speeds up (derived)."""
+    sections = pipes(L, D, A_SPEED, 0.02)
+    plain = run(sections, 100, Reservoir(H0), stop(V0 * AREA), 12 * TRIP, keep=(-1,))
+    damped = run(sections, 100, Reservoir(H0), stop(V0 * AREA), 12 * TRIP, keep=(-1,), unsteady=True)
+    fine = run(sections, 400, Reservoir(H0), stop(V0 * AREA), 12 * TRIP, keep=(-1,), unsteady=True)
+    assert at(damped, 0.02 * TRIP) == pytest.approx(at(plain, 0.02 * TRIP), abs=1e-4 * RISE)
+    later = [at(damped, (k + 0.5) * TRIP) - H0 for k in (2, 4, 6, 8, 10)]
+    unhindered = [at(plain, (k + 0.5) * TRIP) - H0 for k in (2, 4, 6, 8, 10)]
+    assert all(0 < a < b for a, b in zip(later, unhindered, strict=True))
+    assert later == pytest.approx([at(fine, (k + 0.5) * TRIP) - H0 for k in (2, 4, 6, 8, 10)], rel=0.01)
