@@ -62,12 +62,22 @@ def _text(value: object) -> str:
     return str(value)
 
 
+def _as_numbers(cells: pd.Series) -> pd.Series:
+    """A column of mixed objects as floats where every filled cell is a number, so that no cell is read one by one."""
+    if cells.dtype != object:
+        return cells
+    kinds = set(map(type, cells.array))
+    if kinds <= {int, float, type(None), type(pd.NA), type(pd.NaT)} and kinds & {int, float}:
+        return cells.astype(float)
+    return cells
+
+
 class Column:
     """One column with its distinct cells; gives findings their rows and wording."""
 
     def __init__(self, attribute: Attribute, heading: str, unit: str, cells: pd.Series, ledger: Ledger) -> None:
         self.attribute, self.heading, self.unit, self.ledger = attribute, heading, unit, ledger
-        self.cells = cells
+        self.cells = cells = _as_numbers(cells) if attribute.kind not in ("id", "text") else cells
         self.numeric = cells.dtype.kind in "iuf" and not isinstance(cells.dtype, pd.CategoricalDtype)
         if not self.numeric:
             self.code, unique = pd.factorize(cells)

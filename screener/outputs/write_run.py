@@ -9,6 +9,8 @@ from pathlib import Path
 
 import numpy as np
 import pandas as pd
+import pyarrow
+import pyarrow.csv
 
 import screener
 from screener.columns import inventory_attributes
@@ -95,8 +97,26 @@ def _is_number(text: str) -> bool:
 
 def write_csv(frame: pd.DataFrame, path: Path) -> None:
     """CSV with numbers to 7 significant digits, so that equal runs give equal bytes."""
+    columns = {}
+    for name in frame.columns:
+        values = frame[name]
+        if values.dtype.kind == "f":
+            columns[name] = pyarrow.array(seven_digits(values.to_numpy(dtype=float)), from_pandas=True)
+        elif values.dtype.kind in "iub" or isinstance(values.dtype, pd.Int64Dtype):
+            columns[name] = pyarrow.Array.from_pandas(values)
+        else:
+            columns[name] = pyarrow.array([None if v is None or v is pd.NA or v != v else str(v) for v in values.astype(object)], type=pyarrow.string())
     with whole_file(path) as temporary:
-        frame.to_csv(temporary, index=False, float_format="%.7g", encoding="utf-8", lineterminator="\n")
+        options = pyarrow.csv.WriteOptions(quoting_style="needed", quoting_header="needed")
+        pyarrow.csv.write_csv(pyarrow.table(columns), temporary, options)
+
+
+def seven_digits(values: np.ndarray) -> np.ndarray:
+    """Values rounded to 7 significant digits."""
+    size = np.where(np.isfinite(values) & (values != 0.0), np.abs(values), 1.0)
+    scale = 10.0 ** (6 - np.floor(np.log10(size)))
+    # Dividing by a whole power of ten keeps the shortest decimal form.
+    return np.where(scale >= 1.0, np.round(values * scale) / scale, np.round(values * scale) * np.round(1.0 / np.minimum(scale, 1.0)))
 
 
 def run_record(screening: Screening, source, summary, paths) -> dict:
