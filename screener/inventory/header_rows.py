@@ -25,7 +25,13 @@ def known_words() -> frozenset[str]:
     for name, attribute in inventory_attributes().items():
         words |= {normal(name.replace("_", " ")), normal(attribute.label), normal(attribute.machine_name.replace("_", " "))}
         words |= {normal(synonym) for synonym in attribute.synonyms}
+    words |= {sorted_words(word) for word in words}
     return frozenset(words)
+
+
+def sorted_words(text: str) -> str:
+    """Words in alphabetical order: "pressure operating" is "operating pressure"."""
+    return " ".join(sorted(text.split()))
 
 
 def header_score(cells: list) -> float:
@@ -36,7 +42,7 @@ def header_score(cells: list) -> float:
             continue
         if isinstance(cell, str):
             word = normal(cell)
-            if word in known_words() or any(word.startswith(k + " ") or word.endswith(" " + k) for k in _starts(word)):
+            if word in known_words() or sorted_words(word) in known_words() or any(word.startswith(k + " ") or word.endswith(" " + k) for k in _starts(word)):
                 score += 3.0
             elif re.fullmatch(r"[-+\d.,/ ]+", cell.strip()):
                 score -= 1.0
@@ -53,7 +59,7 @@ def _starts(word: str) -> list[str]:
 
 
 def find_header(rows: list[list]) -> tuple[int, int, float]:
-    """(index of the first header row, number of header rows 1 or 2, score) among the first rows."""
+    """(index of the first header row, number of header rows, score) among the first rows."""
     best = (0, 1, float("-inf"))
     for i, row in enumerate(rows[:LOOKED_AT]):
         single = header_score(row)
@@ -64,9 +70,29 @@ def find_header(rows: list[list]) -> tuple[int, int, float]:
             if any(isinstance(c, (int, float)) and not isinstance(c, bool) for c in below):
                 continue
             joined = header_score(join_rows(row, below))
-            if joined > best[2] + 2.9 and header_score(below) > 0 and sum(1 for c in row if c not in (None, "")) > 1:
+            if joined > best[2] + 2.0 and header_score(below) > 0:
                 best = (i, 2, joined)
+    below = best[0] + best[1]
+    if below < len(rows) and is_unit_row(rows[below]):
+        best = (best[0], best[1] + 1, best[2])
     return best
+
+
+UNIT_ROW = re.compile(r"[(\[].*[)\]]|mm|m|cm|in|inch|inches|psi|bar|kpa|mpa|ksi|ft|c|f|°c|°f|deg c|deg f|nm|ft-lb|ft lb|-|text|date|no\.?", re.I)
+
+
+def is_unit_row(row: list) -> bool:
+    """A row below the headings that holds nothing but units."""
+    filled = [str(cell).strip() for cell in row if cell not in (None, "")]
+    return bool(filled) and all(UNIT_ROW.fullmatch(text) for text in filled) and any(text not in ("-",) for text in filled)
+
+
+def joined_header(rows: list[list], at: int, height: int) -> list:
+    """The headings of `height` header rows from row `at`, as one row."""
+    header = list(rows[at])
+    for below in rows[at + 1 : at + height]:
+        header = join_rows(header, below)
+    return header
 
 
 def join_rows(upper: list, lower: list) -> list:
@@ -85,7 +111,7 @@ def join_rows(upper: list, lower: list) -> list:
         head = above or reach
         if not below:
             joined.append(above)
-        elif re.fullmatch(r"[(\[].*[)\]]|mm|m|in|psi|bar|kpa|ft|c|f|nm|ft-lb", below.lower()):
+        elif UNIT_ROW.fullmatch(below):
             joined.append(f"{head} ({below.strip('()[]')})")  # the lower row carries the unit
         elif head and not known_alone(below):
             joined.append(f"{head} {below}")

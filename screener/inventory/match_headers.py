@@ -10,7 +10,7 @@ from functools import cache
 import pandas as pd
 
 from screener.columns import Attribute, inventory_attributes
-from screener.inventory.header_rows import normal
+from screener.inventory.header_rows import normal, sorted_words
 from screener.records import InputError, Ledger, RawTable, Severity
 from screener.units import UNITS, find_unit
 
@@ -91,6 +91,8 @@ def _vocabulary() -> dict[str, tuple[str, str]]:
         words[normal(attribute.label)] = (name, "its label")
         words[normal(attribute.machine_name.replace("_", " "))] = (name, "its machine name")
         words[normal(name.replace("_", " "))] = (name, "its name")
+    for wording, meaning in list(words.items()):
+        words.setdefault(sorted_words(wording), meaning)
     return words
 
 
@@ -104,7 +106,7 @@ def _candidates(heading: str) -> list[Matched]:
     for attribute in attributes.values():
         tried.add(_without_unit(heading, attribute))
     for wording in tried:
-        for variant in dict.fromkeys((wording, wording.rstrip("s"), re.sub(r"\b(no|number|nr)\b", "", wording).strip())):
+        for variant in dict.fromkeys((wording, sorted_words(wording), wording.rstrip("s"), re.sub(r"\b(no|number|nr)\b", "", wording).strip())):
             if variant in vocabulary:
                 name, what = vocabulary[variant]
                 attribute = attributes[name]

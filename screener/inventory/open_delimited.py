@@ -9,7 +9,7 @@ from pathlib import Path
 import numpy as np
 import pandas as pd
 
-from screener.inventory.header_rows import LOOKED_AT, MOST_COLUMNS, find_header, join_rows, name_headings
+from screener.inventory.header_rows import LOOKED_AT, MOST_COLUMNS, find_header, joined_header, name_headings
 from screener.records import InputError, Ledger, RawTable, Severity
 
 DELIMITERS = (",", ";", "\t", "|")
@@ -43,7 +43,7 @@ def open_delimited(path: Path, ledger: Ledger) -> RawTable:
     at, height, score = find_header(rows)
     if score <= 0.0:
         raise InputError(f"{path}: no row of headings found in the first {LOOKED_AT} rows; expected headings such as 'Joint', 'Size', 'Operating pressure (psi)'")
-    header = join_rows(rows[at], rows[at + 1]) if height == 2 else rows[at]
+    header = joined_header(rows, at, height)
     return _table(path, header, rows[at + height :], np.array(numbers[at + height :], dtype=np.int64), ledger)
 
 

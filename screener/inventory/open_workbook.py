@@ -8,7 +8,7 @@ import numpy as np
 import pandas as pd
 import python_calamine
 
-from screener.inventory.header_rows import LOOKED_AT, MOST_COLUMNS, find_header, join_rows, name_headings
+from screener.inventory.header_rows import LOOKED_AT, MOST_COLUMNS, find_header, joined_header, name_headings
 from screener.records import InputError, Ledger, RawTable, Severity
 
 ERROR_VALUES = ("#N/A", "#DIV/0!", "#REF!", "#VALUE!", "#NAME?", "#NUM!", "#NULL!")
@@ -67,7 +67,7 @@ def _short(problem: Exception) -> str:
 
 
 def _table(path: Path, sheet: str, rows: list, start: int, at: int, height: int, ledger: Ledger) -> RawTable:
-    header = join_rows(rows[at], rows[at + 1]) if height == 2 else rows[at]
+    header = joined_header(rows, at, height)
     body = rows[at + height :]
     numbers = np.arange(start + at + height + 1, start + at + height + 1 + len(body))
     frame = pd.DataFrame(body, dtype=object)
