@@ -106,12 +106,10 @@ def _closed(outward: np.ndarray) -> np.ndarray:
     inside = outward[2:-1] <= outward[:-3]
     mark = beyond[1:]
     mark &= inside
-    if (mark[1:] & mark[:-1]).any():  # runs of equal ranges: take the first, third, fifth ... of each run
-        starts = np.flatnonzero(mark & ~np.concatenate(([False], mark[:-1])))
-        run_start = np.zeros(len(mark), dtype=np.int64)
-        run_start[starts] = starts
-        np.maximum.accumulate(run_start, out=run_start)
-        mark &= (np.arange(len(mark)) - run_start) % 2 == 0
+    # Equal ranges can mark neighbours: then those at even places go now, and those at odd places only beside none of them.
+    even, odd = mark[::2], mark[1::2]
+    odd &= ~even[: len(odd)]
+    odd[: len(even) - 1] &= ~even[1:]
     return mark
 
 
