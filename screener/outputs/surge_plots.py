@@ -11,7 +11,7 @@ import numpy as np
 from screener.outputs.run_folder import make_folder, whole_file, write_text
 from screener.pressure.main_profile import Main, read_main
 from screener.pressure.transient_case import NEEDS_STUDY, SurgeCase, SurgeRun, solve_main
-from screener.pressure.transient_pipe import GRAVITY
+from screener.pressure.water import GRAVITY
 
 KPA, PSI, FOOT = 1e3, 6894.757293168, 0.3048
 MOST_HISTORY_ROWS = 20_000

@@ -11,9 +11,10 @@ from pathlib import Path
 
 import numpy as np
 
+from screener.pressure import water
+from screener.pressure.surge import RESTRAINTS
 from screener.pressure.transient_devices import read_devices, read_end
 from screener.pressure.transient_input import Table, beside, part_of, read_rows, read_toml, tables_of
-from screener.pressure.transient_pipe import ATMOSPHERE, RESTRAINTS, water_bulk_modulus, water_density
 from screener.records import InputError
 
 PLASTIC_MODULUS = 10e9
@@ -75,8 +76,8 @@ def read_main(path: str | Path) -> Main:
     assumed: list[str] = []
     top = Table(read_toml(path), str(path), assumed)
     chainage, elevation, pipe = _read_profile(top, path, assumed)
-    water, run, creep = (part_of(top, name, assumed) for name in ("water", "run", "creep"))
-    in_water = _read_water(water)
+    liquid, run, creep = (part_of(top, name, assumed) for name in ("water", "run", "creep"))
+    in_water = _read_water(liquid)
     joint_id, joint_chainage = _read_joints(top, path, assumed)
     read = {
         "name": top.text("name", default=path.stem),
@@ -88,7 +89,7 @@ def read_main(path: str | Path) -> Main:
         **_read_creep(creep),
         **_read_run(run, chainage),
     }
-    for table in (water, run, creep, top):
+    for table in (liquid, run, creep, top):
         table.done()
     return Main(
         chainage=chainage, elevation=elevation, pipe=pipe, joint_id=joint_id, joint_chainage=joint_chainage, assumed=tuple(assumed), **read
@@ -102,10 +103,10 @@ def _read_water(table: Table) -> dict:
     temperature = table.number("temperature", "temperature", default=15.0, low=0.0, high=60.0, note="water at 15 C")
     return {
         "temperature_c": temperature,
-        "density": table.number("density_kg_per_m3", "ratio", default=float(water_density(temperature)), low=900.0, high=1200.0),
-        "bulk_modulus": table.number("bulk_modulus", "pressure", default=float(water_bulk_modulus(temperature)), low=1e8, high=5e9),
+        "density": table.number("density_kg_per_m3", "ratio", default=float(water.density(temperature)), low=900.0, high=1200.0),
+        "bulk_modulus": table.number("bulk_modulus", "pressure", default=float(water.isentropic_bulk_modulus(temperature)), low=1e8, high=5e9),
         "atmospheric_pressure": table.number(
-            "atmospheric_pressure", "pressure", default=ATMOSPHERE, low=4e4, high=1.2e5, note="atmospheric pressure 101.325 kPa"
+            "atmospheric_pressure", "pressure", default=water.ATMOSPHERIC_PRESSURE, low=4e4, high=1.2e5, note="atmospheric pressure 101.325 kPa"
         ),
     }
 

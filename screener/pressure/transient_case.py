@@ -6,12 +6,14 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from screener.pressure import surge
 from screener.pressure.main_profile import PLASTIC_MODULUS, Main
 from screener.pressure.transient_devices import make_end
 from screener.pressure.transient_grid import Grid, Sections, make_grid
 from screener.pressure.transient_nodes import AirValve, ConstantDemand, OrificeDemand
-from screener.pressure.transient_pipe import GRAVITY, kinematic_viscosity, restraint_factor, vapour_pressure, wave_speed
+from screener.pressure.transient_pipe import kinematic_viscosity
 from screener.pressure.transients import Event, Transient, solve_transient
+from screener.pressure.water import GRAVITY, vapour_pressure
 from screener.records import InputError
 
 MOST_WORK = 2_000_000_000
@@ -63,8 +65,9 @@ def make_sections(main: Main, modulus_multiplier: float) -> Sections:
     """Neighbouring stretches of equal pipe joined into sections, with their wave speeds."""
     pipe = main.pipe
     modulus = np.where(pipe.modulus < PLASTIC_MODULUS, pipe.modulus * modulus_multiplier, pipe.modulus)
-    factor = np.array([float(restraint_factor(d, e, nu, r)) for d, e, nu, r in zip(pipe.inside_diameter, pipe.wall, pipe.poisson, pipe.restraint, strict=True)])
-    worked_out = wave_speed(main.density, main.bulk_modulus, modulus, pipe.inside_diameter, pipe.wall, factor)
+    slenderness = pipe.inside_diameter / pipe.wall
+    factor = surge.thick_wall_factor(slenderness, pipe.poisson, surge.axial_restraint(pipe.poisson, pipe.restraint))
+    worked_out = surge.celerity(main.density, main.bulk_modulus, modulus, slenderness, factor)
     speed = np.where(np.isfinite(pipe.wave_speed), pipe.wave_speed, worked_out)
     columns = {
         "inside_diameter": pipe.inside_diameter, "wall": pipe.wall, "modulus": modulus, "factor": factor, "wave_speed": speed,

@@ -6,7 +6,7 @@ import numpy as np
 
 from screener.pressure.transient_ends import Pumps, Reservoir, SetFlow, Valve
 from screener.pressure.transient_input import Table, part_of, tables_of
-from screener.pressure.transient_pipe import GRAVITY
+from screener.pressure.water import GRAVITY
 from screener.records import InputError
 
 MOST_DEVICES = 200

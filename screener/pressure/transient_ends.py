@@ -12,7 +12,7 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from screener.pressure.transient_pipe import GRAVITY
+from screener.pressure.water import GRAVITY
 
 
 def schedule_value(schedule, time: float) -> float:

@@ -6,7 +6,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from screener.pressure.transient_pipe import GRAVITY, common_time_step
+from screener.pressure.transient_pipe import common_time_step
+from screener.pressure.water import GRAVITY
 
 
 @dataclass(frozen=True, eq=False)

@@ -10,7 +10,7 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from screener.pressure.transient_ends import schedule_value
-from screener.pressure.transient_pipe import ATMOSPHERE, GRAVITY
+from screener.pressure.water import ATMOSPHERIC_PRESSURE, GRAVITY
 
 AIR_DENSITY = 1.2
 """Air at 20 C and one atmosphere [kg/m3], for the outflow of air valves."""
@@ -74,7 +74,7 @@ class AirValve:
         """Let air out over one step at the pocket's pressure; incompressible orifice law, fair for small overpressures."""
         over = head - self.elevation
         if over > 0 and self.outlet_area > 0:
-            velocity = np.sqrt(2 * (ATMOSPHERE / self.barometric_head) * over / AIR_DENSITY)
+            velocity = np.sqrt(2 * (ATMOSPHERIC_PRESSURE / self.barometric_head) * over / AIR_DENSITY)
             self.air = max(0.0, self.air - self.outlet_area * velocity * (1 + over / self.barometric_head) * step)
 
     def solve(self, s: float, t: float, head_before: float, step: float):

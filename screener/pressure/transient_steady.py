@@ -8,7 +8,8 @@ import numpy as np
 from scipy.optimize import brentq
 
 from screener.pressure.transient_grid import Grid, Sections
-from screener.pressure.transient_pipe import GRAVITY, friction_factor
+from screener.pressure.transient_pipe import friction_factor
+from screener.pressure.water import GRAVITY
 from screener.records import InputError
 
 FASTEST_FLOW = 20.0

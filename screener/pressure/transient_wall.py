@@ -10,7 +10,7 @@ from __future__ import annotations
 import numpy as np
 
 from screener.pressure.transient_grid import Grid, Sections
-from screener.pressure.transient_pipe import GRAVITY
+from screener.pressure.water import GRAVITY
 
 
 class CreepingWall:

@@ -14,9 +14,10 @@ import numpy as np
 
 from screener.pressure.transient_grid import Grid, Sections
 from screener.pressure.transient_nodes import AirValve, Cavities
-from screener.pressure.transient_pipe import GRAVITY, unsteady_friction_coefficient
+from screener.pressure.transient_pipe import unsteady_friction_coefficient
 from screener.pressure.transient_steady import Steady, reach_resistance, solve_steady
 from screener.pressure.transient_wall import CreepingWall
+from screener.pressure.water import GRAVITY
 
 
 @dataclass(frozen=True, eq=False)
@@ -186,7 +187,8 @@ class _Record:
         gained = step * (self.net.sum() - (self.net[0] + self.net[-1]) / 2)
         moved = step * np.abs(self.end_flow[1:]).sum()
         missing = gained - (self.state.stored_water() - self.stored)
-        return float(missing / max(moved, abs(gained), np.finfo(float).tiny))
+        least = 1e-9 * float((self.state.grid.area * self.state.grid.reach_length).sum())  # where nothing moves, rounding is no error
+        return float(missing / max(moved, abs(gained), least))
 
 
 def solve_transient(event: Event, progress=None) -> Transient:

@@ -7,8 +7,9 @@ import numpy as np
 import pytest
 from scipy.integrate import solve_ivp
 
+from screener.pressure.surge import front_attenuation
 from screener.pressure.transient_ends import Pumps
-from screener.pressure.transient_pipe import front_attenuation, relaxed_wave_speed
+from screener.pressure.transient_pipe import relaxed_wave_speed
 from test_transients_helpers import G, Reservoir, SetFlow, pipes, run, stop, valve
 
 L, D, A_SPEED, V0, H0 = 1000.0, 0.5, 1000.0, 1.2, 80.0
@@ -267,14 +268,19 @@ def test_grid_convergence_of_a_closing_valve_with_friction():
     assert errors[-1] < 0.02
 
 
-def test_unsteady_friction_leaves_the_first_front_and_damps_the_rest():
-    """Brunone's loss in Vitkovsky's form is nil in a front that stops the flow (dV/dt = -a |dV/dx|) and doubles where flow speeds up (derived)."""
-    sections = pipes(L, D, A_SPEED, 0.02)
-    plain = run(sections, 100, Reservoir(H0), stop(V0 * AREA), 12 * TRIP, keep=(-1,))
-    damped = run(sections, 100, Reservoir(H0), stop(V0 * AREA), 12 * TRIP, keep=(-1,), unsteady=True)
-    fine = run(sections, 400, Reservoir(H0), stop(V0 * AREA), 12 * TRIP, keep=(-1,), unsteady=True)
-    assert at(damped, 0.02 * TRIP) == pytest.approx(at(plain, 0.02 * TRIP), abs=1e-4 * RISE)
-    later = [at(damped, (k + 0.5) * TRIP) - H0 for k in (2, 4, 6, 8, 10)]
-    unhindered = [at(plain, (k + 0.5) * TRIP) - H0 for k in (2, 4, 6, 8, 10)]
-    assert all(0 < a < b for a, b in zip(later, unhindered, strict=True))
-    assert later == pytest.approx([at(fine, (k + 0.5) * TRIP) - H0 for k in (2, 4, 6, 8, 10)], rel=0.01)
+def test_unsteady_friction_leaves_the_first_rise_and_damps_the_rest():
+    """Brunone's loss in Vitkovsky's form is nil in a front that stops the flow (dV/dt = -a |dV/dx|) and doubles where flow speeds up (derived).
+
+    A stop over one second, since a jump has no derivative: there the answer still drifts with the grid, by 1 % in eleven periods.
+    """
+    sections, slow = pipes(L, D, A_SPEED, 0.02), stop(V0 * AREA, 1.0)
+    places = (0, 2, 4, 6, 8, 10)
+
+    def plateaus(reaches, unsteady):
+        result = run(sections, reaches, Reservoir(H0), slow, 12 * TRIP, keep=(-1,), unsteady=unsteady)
+        return np.array([at(result, (k + 0.5) * TRIP + 0.5) - H0 for k in places])
+
+    plain, damped, fine = plateaus(100, False), plateaus(100, True), plateaus(400, True)
+    assert damped[0] == pytest.approx(plain[0], abs=1e-3 * RISE)
+    assert (damped[1:] < plain[1:]).all() and (np.diff(damped / plain) < 0).all()
+    assert damped == pytest.approx(fine, rel=1e-3)

@@ -8,6 +8,7 @@ import csv
 import numpy as np
 import pytest
 
+from screener.pressure import surge, water
 from screener.pressure import transient_pipe as pipe
 from test_transients_helpers import DATA, G, Reservoir, pipes, run, stop, valve
 
@@ -112,8 +113,8 @@ def test_textbook_example_4800_m_valve_in_steps(reaches, within):
 
 def copper_rig(velocity, reaches, duration, unsteady=False):
     """Sloping copper pipe of Bergant and Simpson: 37.23 m x 22.1 mm, a 1319 m/s, 2.03 m uphill, tank at 22 m, closure 9 ms (read second hand)."""
-    density, viscosity = float(pipe.water_density(15)), float(pipe.kinematic_viscosity(15))
-    vapour = (float(pipe.vapour_pressure(15)) - pipe.ATMOSPHERE) / (density * G)
+    density, viscosity = float(water.density(15)), float(pipe.kinematic_viscosity(15))
+    vapour = (float(water.vapour_pressure(15)) - water.ATMOSPHERIC_PRESSURE) / (density * G)
     friction = float(pipe.friction_factor(velocity * 0.0221 / viscosity, 1.5e-6 / 0.0221))
     result = run(
         pipes(37.23, 0.0221, 1319.0, friction), reaches, Reservoir(22.0), stop(velocity * np.pi / 4 * 0.0221**2, 0.009), duration,
@@ -128,7 +129,7 @@ def test_column_separation_moderate_rig(reaches):
     result, gauge = copper_rig(0.3, reaches, 0.5)
     measured = printed("column separation 0.3 m/s", "highest absolute pressure at valve (measured)") * 1e3
     joukowsky = 22.0 + 1319 * 0.3 / G
-    assert gauge.max() + pipe.ATMOSPHERE == pytest.approx(measured, rel=0.08)
+    assert gauge.max() + water.ATMOSPHERIC_PRESSURE == pytest.approx(measured, rel=0.08)
     assert result.maximum_head[-1] == pytest.approx(printed("column separation 0.3 m/s", "highest head at valve (measured)"), rel=0.09)
     assert result.maximum_head[-1] > 1.4 * joukowsky and result.column_separation
     assert result.maximum_before_cavity[-1] == pytest.approx(joukowsky, rel=0.01)
@@ -149,7 +150,7 @@ def test_column_separation_severe_rig():
     assert fall == pytest.approx(printed(case, "end of first pulse (measured)"), abs=0.003)
     back = time[np.flatnonzero((gauge > 5e5) & (time > 0.1))[0]]
     assert back == pytest.approx(printed(case, "end of first cavity (measured)"), rel=0.06)
-    second = gauge[(time > 0.3) & (time < 0.6)].max() + pipe.ATMOSPHERE
+    second = gauge[(time > 0.3) & (time < 0.6)].max() + water.ATMOSPHERIC_PRESSURE
     assert second / 1e3 == pytest.approx(printed(case, "second peak of absolute pressure at valve (measured)"), rel=0.10)
 
 
@@ -162,7 +163,7 @@ def london_rig(creep, retardation, unsteady=True):
     flow, bore = 1.01e-3, 0.0506
     velocity = flow / (np.pi / 4 * bore**2)
     friction = float(pipe.friction_factor(velocity * bore / 1.0e-6, 0.0))
-    factor = float(pipe.restraint_factor(bore, 0.00625, 0.46, "anchored"))
+    factor = float(surge.thick_wall_factor(bore / 0.00625, 0.46, surge.axial_restraint(0.46, "anchored")))
     sections = pipes(277.0, bore, 395.0, friction, 0.00625, factor, creep, retardation)
     result = run(sections, 250, Reservoir(45.0), stop(flow, 0.09), 20.0, keep=(-1,), unsteady=unsteady)
     return result.time, result.history_head[:, 0], result.steady.head[-1], 395.0 * velocity / G
