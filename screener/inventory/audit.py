@@ -43,7 +43,6 @@ class Audit:
 def audit_rows(gaps: Gaps, column_of: dict[str, str], as_written, settings: Settings) -> None:
     audit = Audit(gaps, column_of, as_written)
     _check_unit_slips(audit)
-    _check_ring_against_pipe(audit)
     _check_pipe(audit)
     _check_pressures(audit)
     _check_dates(audit, settings)
@@ -92,8 +91,9 @@ def _check_unit_slips(audit: Audit) -> None:
     )
 
 
-def _check_ring_against_pipe(audit: Audit) -> None:
-    gaps = audit.gaps
+def audit_ring(gaps: Gaps, column_of: dict[str, str], as_written) -> None:
+    """The ring's own dimensions against each other and the pipe, once the pipe's diameter is known."""
+    audit = Audit(gaps, column_of, as_written)
     circle, outside, bore = gaps["bolt_circle_diameter"], gaps["ring_outside_diameter"], gaps["ring_bore"]
     hub, hole, bolt = gaps["hub_outside_diameter"], gaps["hole_diameter"], gaps["bolt_diameter"]
     pipe = gaps["pipe_outside_diameter"]

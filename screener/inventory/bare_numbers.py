@@ -93,3 +93,24 @@ def decide_units(column, numbers: np.ndarray, bare: np.ndarray) -> np.ndarray:
 
 def _usual(values: np.ndarray, low: float, high: float) -> np.ndarray:
     return (values >= low) & (values <= high)
+
+
+def slips(attribute, values: np.ndarray, suspect: np.ndarray):
+    """(unit, mask) for suspect SI values that would be usual had their number been meant in another usual unit.
+
+    Two usual units of a dimension differ by a factor; a value is a likely slip
+    when that factor, applied either way, brings it into the usual range.
+    """
+    span = USUAL.get(attribute.name)
+    units = CANDIDATES.get(attribute.dimension, ())
+    if span is None or attribute.dimension.startswith("temperature") or not suspect.any():
+        return
+    left = suspect.copy()
+    for meant in units:
+        for written in units:
+            if meant != written:
+                moved = values * float(from_unit(1.0, meant)) / float(from_unit(1.0, written))
+                here = left & _usual(moved, *span)
+                if here.any():
+                    left &= ~here
+                    yield meant, here

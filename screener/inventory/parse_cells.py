@@ -12,7 +12,7 @@ import pandas as pd
 
 from screener.columns import Attribute, inventory_attributes
 from screener.inventory import parse_values as one
-from screener.inventory.bare_numbers import decide_units
+from screener.inventory.bare_numbers import decide_units, slips
 from screener.inventory.match_headers import HeaderMatch
 from screener.records import Ledger, Origin, RawTable, Severity
 from screener.units import accepted, from_unit, is_missing_word, read_quantity
@@ -165,6 +165,10 @@ def _limit(column: Column, values: np.ndarray, origin: np.ndarray) -> tuple[np.n
     if attribute.possible:
         low, high = attribute.possible
         out = (values < low * (1 - 1e-9) - 1e-12) | (values > high * (1 + 1e-9) + 1e-12)
+        for unit, here in slips(attribute, values, out):
+            column.note("unit_slip", Severity.DOUBTS, here, f"not possible for {attribute.label.lower()}; it would be usual in {unit}, so perhaps the unit is wrong", "cell not used")
+            out &= ~here
+            values = np.where(here, np.nan, values)
         column.note("out_of_range", Severity.DOUBTS, out | infinite, f"not possible for {attribute.label.lower()}; accepted: {_span(attribute, low, high)}", "cell not used")
         values = np.where(out, np.nan, values)
     if attribute.plausible:

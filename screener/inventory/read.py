@@ -98,6 +98,7 @@ def fill_gaps(gaps: Gaps, settings: Settings, column_of, as_written, blocked: di
     fill_pipe.fill_size_system(gaps)
     fill_pipe.fill_outside_diameter(gaps)
     fill_pipe.check_sizes(gaps, blocked)
+    audit.audit_ring(gaps, column_of, as_written)
     fill_pipe.fill_material(gaps)
     fill_pipe.fill_dimension_ratio(gaps)
     fill_ring.fill_ring_standard(gaps)
