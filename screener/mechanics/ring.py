@@ -70,6 +70,17 @@ def ring_validity(contact_inner_radius, contact_outer_radius, bolt_circle_radius
     return sum(np.where(failed, int(reason), 0) for reason, failed in checks.items())
 
 
+def _positive(value):
+    """The value where it is larger than zero and finite, NaN elsewhere: a size that cannot be is unknown."""
+    return np.where((np.real(value) > 0) & np.isfinite(value), value, np.nan)
+
+
+def _radius_ratio(outer_radius, bore_radius):
+    """Outer over bore radius where larger than one, NaN elsewhere [-]."""
+    ratio = _positive(outer_radius) / _positive(bore_radius)
+    return np.where(np.real(ratio) > 1, ratio, np.nan)
+
+
 # ---------------------------------------------------------------- contact with the hub
 
 
@@ -88,12 +99,12 @@ class HubContact:
 
 
 def ring_rotational_stiffness(ring_modulus, thickness, bore_radius, outer_radius):
-    """Twisting couple per radian of circumference needed for unit rotation of a flat ring, E t^3 ln(b/a) / 12 [N m].
+    """Twisting couple per radian of circumference that turns a flat ring by unit rotation, E t^3 ln(b/a) / 12 [N m].
 
     E ring modulus [Pa]; t thickness, a bore radius, b outer radius [m].
     Source: Timoshenko, Strength of Materials, part II, twist of a circular ring by couples along its centre line (section does not distort).
     """
-    return ring_modulus * thickness**3 * np.log(outer_radius / bore_radius) / 12
+    return _positive(ring_modulus) * _positive(thickness) ** 3 * np.log(_radius_ratio(outer_radius, bore_radius)) / 12
 
 
 def hub_contact(contact_inner_radius, contact_outer_radius, bolt_circle_radius, ring_bore_radius, ring_outer_radius, ring_thickness, ring_modulus, hub_modulus, hub_thickness):
@@ -106,7 +117,7 @@ def hub_contact(contact_inner_radius, contact_outer_radius, bolt_circle_radius, 
     dimensions = (contact_inner_radius, contact_outer_radius, bolt_circle_radius, ring_bore_radius, ring_outer_radius, ring_thickness)
     r_i, r_o, r_b, a, b, t, e_ring, e_hub, h = np.broadcast_arrays(*dimensions, ring_modulus, hub_modulus, hub_thickness)
     usable = (ring_validity(r_i, r_o, r_b, a, b, t) & BLOCKING_REASONS) == 0
-    usable = usable & (np.real(e_ring) > 0) & (np.real(e_hub) > 0) & (np.real(h) > 0)
+    usable = usable & np.isfinite(_positive(e_ring) + _positive(e_hub) + _positive(h))
     r_i, r_o, r_b, a, b, t, e_ring, e_hub, h = (
         np.where(usable, x, safe) for x, safe in zip((r_i, r_o, r_b, a, b, t, e_ring, e_hub, h), (1.0, 1.2, 1.3, 1.0, 1.4, 0.1, 1.0, 1.0, 1.0))
     )
@@ -202,7 +213,7 @@ def loose_ring_stress(bolt_load, lever_arm, ring_thickness, bore_radius, outer_r
     W total bolt load [N]; e lever arm, t thickness, a bore radius, b outer radius [m].
     Source: ASME BPVC VIII-1, Appendix 2, loose-type ring flange, with the arm to the hub's true reaction. Bolt holes are not in it.
     """
-    return taylor_forge_y(outer_radius / bore_radius) * bolt_load * lever_arm / (ring_thickness**2 * 2 * bore_radius)
+    return taylor_forge_y(_radius_ratio(outer_radius, bore_radius)) * bolt_load * lever_arm / (_positive(ring_thickness) ** 2 * 2 * _positive(bore_radius))
 
 
 def ring_rotation(bolt_load, lever_arm, thickness, bore_radius, outer_radius, modulus):
@@ -224,7 +235,7 @@ def first_yield_bolt_load(yield_strength, lever_arm, ring_thickness, bore_radius
 
     yield strength [Pa]; lever arm, thickness, radii [m]; hole_factor: bore-corner stress with bolt holes over without, 1 for a smooth ring [-].
     """
-    return yield_strength / (hole_factor * loose_ring_stress(1.0, lever_arm, ring_thickness, bore_radius, outer_radius))
+    return yield_strength / (_positive(hole_factor) * loose_ring_stress(1.0, _positive(lever_arm), ring_thickness, bore_radius, outer_radius))
 
 
 def plastic_bolt_load(yield_strength, lever_arm, ring_thickness, bore_radius, outer_radius, hole_diameter):
@@ -233,9 +244,8 @@ def plastic_bolt_load(yield_strength, lever_arm, ring_thickness, bore_radius, ou
     yield strength [Pa]; lever arm, thickness, radii, hole diameter (0 for a smooth ring) [m]. Source: limit analysis; the hoop bending
     moment W e / 2 pi is the same in every radial section, so the weakest one governs.
     """
-    net_width = outer_radius - bore_radius - hole_diameter
-    net_width = np.where(np.real(net_width) > 0, net_width, np.nan)
-    return np.pi / 2 * yield_strength * ring_thickness**2 * net_width / lever_arm
+    net_width = _positive(outer_radius - bore_radius - hole_diameter)
+    return np.pi / 2 * yield_strength * ring_thickness**2 * net_width / _positive(lever_arm)
 
 
 # ---------------------------------------------------------------- rating
@@ -255,8 +265,8 @@ def loose_ring_rating(yield_strength, safety_factor, hole_factor, lever_arm, rin
 
     Arguments as in `loose_ring_stress` and `app2_bolt_load`; hole_factor as in `first_yield_bolt_load`; safety_factor [-].
     """
-    allowed_bolt_load = first_yield_bolt_load(yield_strength, lever_arm, ring_thickness, bore_radius, outer_radius, hole_factor) / safety_factor
-    return allowed_bolt_load / app2_bolt_load(1.0, pressure_diameter, face_area, gasket_factor)
+    allowed_bolt_load = first_yield_bolt_load(yield_strength, lever_arm, ring_thickness, bore_radius, outer_radius, hole_factor) / _positive(safety_factor)
+    return allowed_bolt_load / _positive(app2_bolt_load(1.0, pressure_diameter, face_area, gasket_factor))
 
 
 def stated_rating_safety_factor(stated_rating, stated_safety_factor, pressure):
@@ -264,15 +274,13 @@ def stated_rating_safety_factor(stated_rating, stated_safety_factor, pressure):
 
     stated_rating, pressure [Pa]; stated_safety_factor [-]. Common practice, no source; not for ratings of welded flanges.
     """
-    return stated_rating * stated_safety_factor / np.where(np.real(pressure) > 0, pressure, np.nan)
+    return stated_rating * stated_safety_factor / _positive(pressure)
 
 
 def stated_rating_pressure(stated_rating, stated_safety_factor, safety_factor):
     """Pressure at which a ring of stated rating keeps a wanted safety factor, the inverse of `stated_rating_safety_factor` [Pa]."""
-    return stated_rating * stated_safety_factor / np.where(np.real(safety_factor) > 0, safety_factor, np.nan)
+    return stated_rating * stated_safety_factor / _positive(safety_factor)
 
-
-# ---------------------------------------------------------------- the same ring welded to a steel pipe
 
 
 def welded_flange_comparison_stress(bolt_load, lever_arm, ring_thickness, bore_radius, outer_radius, modulus, pipe_wall_thickness, poisson_ratio):
@@ -282,8 +290,9 @@ def welded_flange_comparison_stress(bolt_load, lever_arm, ring_thickness, bore_r
     moment 2 beta D theta and a shear 2 beta^2 D theta per unit circumference, the shear at half the ring's thickness from its middle.
     Source: Timoshenko, Strength of Materials, part II, flanged pipe. For comparison only; pipe of the same modulus as the ring, mean radius a - s/2.
     """
-    beta = (3 * (1 - poisson_ratio**2)) ** 0.25 / np.sqrt((bore_radius - pipe_wall_thickness / 2) * pipe_wall_thickness)
-    wall_rigidity = modulus * pipe_wall_thickness**3 / (12 * (1 - poisson_ratio**2))
+    mean_radius, lateral = _positive(bore_radius - pipe_wall_thickness / 2), _positive(1 - poisson_ratio**2)
+    beta = (3 * lateral) ** 0.25 / np.sqrt(mean_radius * _positive(pipe_wall_thickness))
+    wall_rigidity = modulus * pipe_wall_thickness**3 / (12 * lateral)
     pipe_stiffness = bore_radius * 2 * beta * wall_rigidity * (1 + beta * ring_thickness / 2)
     ring_stiffness = ring_rotational_stiffness(modulus, ring_thickness, bore_radius, outer_radius)
     ring_share = ring_stiffness / (ring_stiffness + pipe_stiffness)

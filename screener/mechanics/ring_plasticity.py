@@ -9,7 +9,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from .ring import _contact_integrals, hub_contact, ring_rotational_stiffness
+from .ring import _contact_integrals, _positive, hub_contact, ring_rotational_stiffness
 
 BISECTIONS = 60
 """Halvings of the bracket on the logarithm of the contact width, from one millionth of the elastic width up: to rounding."""
@@ -30,8 +30,7 @@ class DishedRing:
 
 def net_section_yield_strength(yield_strength, bore_radius, outer_radius, hole_diameter):
     """Yield strength that gives the whole width the plastic couple of the net section through a bolt hole, sigma_y (1 - d_h/(b - a)) [Pa]."""
-    share = 1 - hole_diameter / (outer_radius - bore_radius)
-    return yield_strength * np.where(share > 0, share, np.nan)
+    return yield_strength * _positive(1 - hole_diameter / _positive(outer_radius - bore_radius))
 
 
 def plastic_couple(yield_strength, thickness, bore_radius, outer_radius):
@@ -48,7 +47,7 @@ def elastic_plastic_couple(rotation, yield_strength, ring_modulus, thickness, bo
     Own integration, verified by quadrature and finite elements in the tests.
     """
     a, b, t = bore_radius, outer_radius, thickness
-    strain_radius = ring_modulus * rotation / yield_strength
+    strain_radius = ring_modulus * rotation / _positive(yield_strength)
     yielded_to = np.clip(strain_radius * t / 2, a, b)
     elastic = ring_modulus * rotation * t**3 / 12 * np.log(b / yielded_to)
     core = np.where(yielded_to > a, yielded_to**3 - a**3, 0.0) / np.where(yielded_to > a, strain_radius, 1.0) ** 2 / 9
@@ -64,6 +63,7 @@ def dished_ring(bolt_load, contact_inner_radius, contact_outer_radius, bolt_circ
     """
     values = np.broadcast_arrays(bolt_load, contact_inner_radius, contact_outer_radius, bolt_circle_radius, ring_bore_radius, ring_outer_radius, ring_thickness, ring_modulus, hub_modulus, hub_thickness, yield_strength)
     load, r_i, r_o, r_b, a, b, t, modulus, hub_modulus, hub_thickness, strength = (np.array(v, dtype=float) for v in values)
+    strength = _positive(strength)
     arm = hub_contact(r_i, r_o, r_b, a, b, t, modulus, hub_modulus, hub_thickness)
     stiffness = ring_rotational_stiffness(modulus, t, a, b)
     rotation = load * arm.lever_arm / (2 * np.pi * stiffness)

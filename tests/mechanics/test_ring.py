@@ -190,3 +190,32 @@ def test_every_reason_has_a_sentence():
 def test_shapes_broadcast():
     contact = ring.hub_contact(**{**BASE, "hub_modulus": np.array([2e8, 5e8])[:, None], "ring_thickness": np.array([0.02, 0.03, 0.04])})
     assert contact.lever_arm.shape == contact.neutral_radius.shape == contact.full_contact.shape == (2, 3)
+
+
+@pytest.mark.filterwarnings("error")
+@pytest.mark.parametrize("bad", [0.0, -1.0, np.nan, np.inf])
+@pytest.mark.parametrize(
+    ("formula", "good"),
+    [
+        (ring.loose_ring_stress, (1e5, 0.03, 0.03, 0.3, 0.4)),
+        (ring.ring_rotation, (1e5, 0.03, 0.03, 0.3, 0.4, 2e11)),
+        (ring.ring_compliance, (0.03, 0.03, 0.3, 0.4, 2e11)),
+        (ring.first_yield_bolt_load, (2e8, 0.03, 0.03, 0.3, 0.4, 1.1)),
+        (ring.plastic_bolt_load, (2e8, 0.03, 0.03, 0.3, 0.4, 0.02)),
+        (ring.loose_ring_rating, (2e8, 2.0, 1.1, 0.03, 0.03, 0.3, 0.4, 0.6, 0.2, 1.0)),
+        (ring.stated_rating_safety_factor, (1e6, 2.0, 1e6)),
+        (ring.stated_rating_pressure, (1e6, 2.0, 2.0)),
+        (ring.welded_flange_comparison_stress, (1e5, 0.05, 0.03, 0.3, 0.4, 2e11, 0.01, 0.3)),
+        (ring.hub_contact, tuple(BASE.values())),
+    ],
+)
+def test_impossible_values_neither_warn_nor_harm_their_neighbours(formula, good, bad):
+    expected = formula(*good)
+    for i in range(len(good)):
+        found = formula(*(np.array([bad, value]) if i == j else value for j, value in enumerate(good)))
+        if formula is ring.hub_contact:
+            assert not np.isinf(found.lever_arm[0]) and found.lever_arm[1] == pytest.approx(expected.lever_arm)
+        else:
+            assert found[1] == pytest.approx(expected)
+            if np.isnan(bad):
+                assert np.isnan(found[0])
