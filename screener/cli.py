@@ -176,9 +176,12 @@ def _screen(given, progress) -> int:
 
 
 def _surge(given, progress) -> int:
-    from screener.outputs.surge_run import run_surge
+    from screener.outputs.surge_plots import run_surge
 
-    run_surge(given.file, given.out, progress=progress, quiet=given.quiet)
+    run = run_surge(given.file, given.out, progress=lambda share: progress(f"following the wave, {share:.0%}"))
+    progress.done()
+    if not given.quiet:
+        print(run.files[-1].read_text(encoding="utf-8"))
     return 0
 
 

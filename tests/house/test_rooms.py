@@ -57,7 +57,7 @@ def imports_of(path: Path) -> set[str]:
                 names = [f"screener.{alias.name}" for alias in node.names]
         for name in names:
             parts = name.split(".")
-            if parts[0] == "screener" and len(parts) > 1:
+            if parts[0] == "screener" and len(parts) > 1 and not parts[1].startswith("__"):
                 found.add(parts[1])
     return found
 
