@@ -282,12 +282,12 @@ def stated_rating_pressure(stated_rating, stated_safety_factor, safety_factor):
     return stated_rating * stated_safety_factor / _positive(safety_factor)
 
 
-
 def welded_flange_comparison_stress(bolt_load, lever_arm, ring_thickness, bore_radius, outer_radius, modulus, pipe_wall_thickness, poisson_ratio):
     """Tangential stress at the bore corner of the same ring welded to a long steel pipe [Pa].
 
-    W [N]; e (here from the bolt circle to the middle of the pipe wall), t, a, b, pipe wall s [m]; E [Pa]; nu [-]. The pipe's end turns with the ring and its radial movement is held, so it takes a
-    moment 2 beta D theta and a shear 2 beta^2 D theta per unit circumference, the shear at half the ring's thickness from its middle.
+    W [N]; e (here from the bolt circle to the middle of the pipe wall), t, a, b, pipe wall s [m]; E [Pa]; nu [-]. The pipe's end turns with the
+    ring and its radial movement is held, so it takes a moment 2 beta D theta and a shear 2 beta^2 D theta per unit circumference, the shear at
+    half the ring's thickness from its middle.
     Source: Timoshenko, Strength of Materials, part II, flanged pipe. For comparison only; pipe of the same modulus as the ring, mean radius a - s/2.
     """
     mean_radius, lateral = _positive(bore_radius - pipe_wall_thickness / 2), _positive(1 - poisson_ratio**2)
