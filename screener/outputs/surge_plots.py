@@ -194,6 +194,10 @@ def history_picture(run: SurgeRun, path: Path) -> Path:
             axes.plot(case.result.time, case.result.history_head[:, k], color=INK, lw=1.0, ls=style, label=f"modulus x {case.modulus_multiplier:g}")
         axes.set_ylabel(f"head (m)\nat {place:g} m")
         axes.set_xlim(0, run.main.duration)
+        axes.ticklabel_format(axis="y", useOffset=False)
+        low, high = axes.get_ylim()
+        if high - low < 1:  # a head that stays is a flat line, not magnified rounding
+            axes.set_ylim((low + high) / 2 - 1, (low + high) / 2 + 1)
         axes.grid(alpha=0.25)
     axes.set_xlabel("time (s)")
     _title(np.atleast_1d(panels)[0], run)
