@@ -1,0 +1,2 @@
+def write_loggers(folder, lines, joints):
+    return None
