@@ -1,1 +1,1 @@
-
+"""Fatigue: S-N equations, mean stress, damage sums; curve parameters are handed in."""
