@@ -10,6 +10,7 @@ from screener.limit_names import LIMIT_STATES
 from screener.mechanics import bolts as bolt
 from screener.mechanics import clamp, pipe_wall, polyethylene, ring
 from screener.mechanics.bolt_holes import bore_stress_factor
+from screener.mechanics.ring_model_factor import hub_bed_arm_factor
 from screener.records import Fleet, Ledger, LimitStates, Severity
 from screener.standards.tables import read_table
 
@@ -148,11 +149,10 @@ def clamp_state(fleet: Fleet, state: RingState) -> ClampState:
     return ClampState(force, assembly.cap, now, elastic, clamp.load_factor(elastic, collar(SURGE)))
 
 
-def separating_load(fleet: Fleet, pressure: np.ndarray) -> np.ndarray:
-    """Load that parts the faces at a pressure (N), by the joint's restraint, in the cold season."""
+def axial_pull(fleet: Fleet, pressure: np.ndarray) -> np.ndarray:
+    """Axial pull of the pipe wall at a pressure (N), by the joint's restraint, in the cold season."""
     pipe, loads = fleet.pipe, fleet.loads
-    bore = pipe.bore_diameter
-    free = pipe_wall.free_end_axial_force(pressure, bore)
+    free = pipe_wall.free_end_axial_force(pressure, pipe.bore_diameter)
     held = pipe_wall.restrained_axial_force(
         pressure,
         pipe.outside_diameter,
@@ -162,8 +162,25 @@ def separating_load(fleet: Fleet, pressure: np.ndarray) -> np.ndarray:
         EXPANSION,
         loads.cooling,
     )
-    axial = np.where(loads.restrained, held, free)
-    return clamp.separating_load(pressure, fleet.face.pressure_diameter, bore, axial, 0.0)
+    return np.where(loads.restrained, held, free)
+
+
+def separating_load(fleet: Fleet, pressure: np.ndarray) -> np.ndarray:
+    """Load that parts the faces at a pressure (N)."""
+    return clamp.separating_load(
+        pressure, fleet.face.pressure_diameter, fleet.pipe.bore_diameter, axial_pull(fleet, pressure), 0.0
+    )
+
+
+def arm_under_pull(fleet: Fleet, pressure: np.ndarray, bolt_load: np.ndarray) -> np.ndarray:
+    """Lever arm with the pipe pulling on the collar over the arm at bolt-up (-).
+
+    The pull tilts the collar and moves its reaction inward. Pull shares above
+    0.7, where the study ends, take the value there.
+    """
+    share = np.minimum(axial_pull(fleet, pressure) / bolt_load, 0.7)
+    bolt_up = hub_bed_arm_factor(np.zeros(len(fleet))).mean
+    return hub_bed_arm_factor(share).mean / bolt_up
 
 
 def assess_limits(fleet: Fleet, safety_factor: float, ledger: Ledger) -> LimitStates:
@@ -197,10 +214,11 @@ def assess_limits(fleet: Fleet, safety_factor: float, ledger: Ledger) -> LimitSt
         unloaded = (1 - clamped.load_factor) * separating_load(fleet, pressure)
         return (needed + unloaded) / clamped.force_now
 
+    pulled = arm_under_pull(fleet, recurrent, design_load(recurrent))
     stress = ring.loose_ring_stress(design_load(recurrent), short.lever_arm, r.thickness, bore, outer) * hole_factor
     utilization = {
         "ring_rating": recurrent / rating,
-        "ring_yield": bolt_force / short.first_yield_load,
+        "ring_yield": bolt_force * arm_under_pull(fleet, occasional, bolt_force) / short.first_yield_load,
         "ring_collapse": bolt_force / short.plastic_load,
         "bolts": bolt_force / proof,
         "face_operating": face_need(operating),
@@ -216,6 +234,7 @@ def assess_limits(fleet: Fleet, safety_factor: float, ledger: Ledger) -> LimitSt
     matrix = np.column_stack([utilization[name] for name in LIMIT_STATES]) if len(fleet) else np.empty((0, len(LIMIT_STATES)))
     unknown = np.isnan(matrix)
     governing = np.where(unknown, -1.0, matrix).argmax(axis=1) if len(fleet) else np.empty(0, dtype=int)
+    _note_ring_reasons(fleet, ledger)
     _note_unknown(fleet, matrix, by_rating, ledger)
     opening = operating * clamp.opening_separating_load(clamped.force_now, clamped.load_factor) / separating_load(fleet, operating)
     details = {
@@ -223,6 +242,7 @@ def assess_limits(fleet: Fleet, safety_factor: float, ledger: Ledger) -> LimitSt
         "loose_ring_rating": rating,
         "stated_rating": r.stated_rating,
         "loose_ring_rating_long_term": aged_rating,
+        "loose_ring_rating_pulled": np.where(by_rating, np.nan, rating / pulled),
         "rating_share": rating / r.stated_rating,
         "ring_safety_factor": safety_factor * rating / recurrent,
         "ring_stress": np.where(by_rating, np.nan, stress),
@@ -262,6 +282,24 @@ def ratings(fleet: Fleet, short: RingState, aged: RingState, safety_factor: floa
         action="estimated as a flat plate of the same dimensions",
     )
     return np.where(by_rating, proportional, short.rating), np.where(by_rating, proportional, aged.rating)
+
+
+def _note_ring_reasons(fleet: Fleet, ledger: Ledger) -> None:
+    """What the ring formulas say of their own validity, as findings."""
+    r = fleet.ring
+    bore, outer = 0.5 * r.bore_diameter, 0.5 * r.outside_diameter
+    contact = np.minimum(0.5 * fleet.hub.outside_diameter, outer)
+    bits = ring.ring_validity(bore, contact, 0.5 * r.bolt_circle_diameter, bore, outer, r.thickness)
+    for reason, words in ring.RING_REASON_TEXT.items():
+        blocking = bool(int(reason) & int(ring.BLOCKING_REASONS))
+        ledger.finding(
+            "ring_theory",
+            Severity.DOUBTS,
+            fleet.position[(np.asarray(bits) & int(reason)) != 0],
+            attribute="ring_thickness",
+            problem=words,
+            action="ring not evaluated; ranked by the other limit states" if blocking else "evaluated with the flat-ring formulas, less certain",
+        )
 
 
 def _note_unknown(fleet: Fleet, matrix: np.ndarray, by_rating: np.ndarray, ledger: Ledger) -> None:

@@ -97,7 +97,7 @@ def screen(
     progress("ranking")
     table = result_table(inventory, fleet, limits)
     rows = inventory.raw.row_numbers
-    findings = order.findings_frame(inventory.ledger, rows, inventory.joint_id, inventory.raw.sheet)
+    findings = order.findings_frame(inventory.ledger, rows, inventory.joint_id, inventory.raw.sheet, inventory.column_of)
     table["doubts"] = _count_by_row(findings, table["position"], Severity.DOUBTS)
     assumptions = order.assumptions_frame(inventory.ledger, rows, inventory.joint_id)
     return Screening(inventory, settings, fleet, limits, table, findings, assumptions)

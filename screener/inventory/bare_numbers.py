@@ -57,7 +57,7 @@ def decide_units(column, numbers: np.ndarray, bare: np.ndarray) -> np.ndarray:
     """
     attribute = column.attribute
     if attribute.name in LONG:
-        column.note("unit_taken", Severity.NOTES, bare, "bare numbers without a unit", "taken as metres")
+        column.note_column("unit_taken", Severity.NOTES, f"{int(bare.sum()):,} bare numbers without a unit", "all taken as metres")
         return np.where(bare, "m", "")
     candidates = CANDIDATES[attribute.dimension]
     low, high = USUAL.get(attribute.name) or attribute.plausible or attribute.possible or (-np.inf, np.inf)
@@ -69,25 +69,32 @@ def decide_units(column, numbers: np.ndarray, bare: np.ndarray) -> np.ndarray:
         units[bare] = candidates[best]
         others = [candidates[i] for i in range(len(candidates)) if i != best and share[i] >= share[best] - STRAYS]
         doubt = f"; {', '.join(others)} would fit as well" if others else ""
-        column.note(
+        column.note_column(
             "unit_taken",
             Severity.DOUBTS if others else Severity.NOTES,
-            bare,
-            f"bare numbers, and neither heading nor cell names a unit{doubt}",
-            f"taken as {candidates[best]} from their size",
+            f"{int(bare.sum()):,} bare numbers, and neither heading nor cell names a unit{doubt}",
+            f"all taken as {candidates[best]} from their size",
         )
         return units
     order = np.argsort(-share, kind="stable")
-    for i in order:
+    for place, i in enumerate(order):
         here = bare & (units == "") & fits[i]
         units[here] = candidates[i]
-        column.note(
-            "unit_taken_by_value",
-            Severity.DOUBTS,
-            here,
-            "bare numbers of mixed units in one column",
-            f"taken as {candidates[i]} from their size",
-        )
+        if place == 0:
+            column.note_column(
+                "unit_taken_by_value",
+                Severity.DOUBTS,
+                f"{int(bare.sum()):,} bare numbers of more than one unit in this column",
+                f"{int(here.sum()):,} taken as {candidates[i]} from their size; the others are listed by row",
+            )
+        else:
+            column.note(
+                "unit_taken_by_value",
+                Severity.DOUBTS,
+                here,
+                f"a bare number that would not be usual in {candidates[order[0]]}, the unit of the column's other bare numbers",
+                f"taken as {candidates[i]} from its size",
+            )
     return units
 
 

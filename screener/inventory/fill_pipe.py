@@ -275,6 +275,14 @@ def check_sizes(gaps: Gaps, blocked: dict[str, np.ndarray]) -> None:
     """Sizes that no table has end the row, with the reason."""
     no_size = gaps.missing("pipe_outside_diameter")
     blocked["neither a nominal size nor an outside diameter can be used"] = no_size & gaps.missing("nominal_size")
+    gaps.ledger.finding(
+        "no_size",
+        Severity.BLOCKS,
+        no_size & gaps.missing("nominal_size"),
+        attribute="nominal_size",
+        problem="the joint has no size that can be used",
+        action="not ranked; give a nominal size or an outside diameter",
+    )
     unknown = no_size & gaps.known("nominal_size")
     blocked["nominal size is not in the tables of its size system and no outside diameter is given"] = unknown
     gaps.ledger.finding(

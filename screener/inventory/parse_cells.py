@@ -103,6 +103,10 @@ class Column:
         if len(where):
             self.ledger.finding(code, severity, where, attribute=self.attribute.name, column=self.heading, values=written(self.cells.iloc[where]), problem=problem, action=action)
 
+    def note_column(self, code: str, severity: Severity, problem: str, action: str) -> None:
+        """A finding about the column as a whole."""
+        self.ledger.finding(code, severity, None, attribute=self.attribute.name, column=self.heading, problem=problem, action=action)
+
     def note_each(self, code: str, severity: Severity, words: list[str], action: str) -> None:
         """One finding per distinct wording, over the rows that have it."""
         for text in sorted({word for word in words if word}):

@@ -39,6 +39,11 @@ class Inventory:
         return len(self.raw)
 
     @property
+    def column_of(self) -> dict[str, str]:
+        """Heading of the column each attribute was read from."""
+        return {name: self.raw.headings[k] for name, k in self.match.columns.items()}
+
+    @property
     def place(self) -> tuple[np.ndarray | None, np.ndarray | None]:
         """(x, y) of each row in the file's own coordinates: its geometry, else its coordinate columns."""
         if self.raw.x is not None:

@@ -5,8 +5,6 @@ from __future__ import annotations
 import sys
 from pathlib import Path
 
-import numpy as np
-
 from screener.columns import inventory_attributes
 from screener.inventory.mapping_file import write_mapping
 from screener.inventory.read import Inventory
@@ -18,9 +16,9 @@ from screener.priority.ranking import coverage, findings_frame
 def write_check(inventory: Inventory, folder: str | Path) -> None:
     """findings.csv, coverage.csv and mapping.toml in `folder`."""
     folder = make_folder(folder)
-    findings = findings_frame(inventory.ledger, inventory.raw.row_numbers, inventory.joint_id, inventory.raw.sheet)
+    findings = findings_frame(inventory.ledger, inventory.raw.row_numbers, inventory.joint_id, inventory.raw.sheet, inventory.column_of)
     write_csv(guard_formulas(findings.drop(columns="position")), folder / "findings.csv")
-    headings = {name: inventory.raw.headings[k] for name, k in inventory.match.columns.items()}
+    headings = inventory.column_of
     write_csv(guard_formulas(coverage(inventory.gaps.origins, headings)), folder / "coverage.csv")
     write_mapping(folder / "mapping.toml", inventory.match)
 
@@ -41,7 +39,7 @@ def print_check(inventory: Inventory, rows: int, folder: str | None) -> None:
     out.write("Columns understood\n")
     for line in inventory.match.lines():
         out.write(f"  {plain(line, 110)}\n")
-    headings = {name: raw.headings[k] for name, k in inventory.match.columns.items()}
+    headings = inventory.column_of
     frame = coverage(inventory.gaps.origins, headings)
     out.write("\nCoverage (joints)                      read  looked up  derived  assumed  missing\n")
     for _, line in frame.iterrows():
@@ -53,8 +51,9 @@ def print_check(inventory: Inventory, rows: int, folder: str | None) -> None:
     counts = findings["severity"].astype(str).value_counts()
     out.write("\nFindings: " + (", ".join(f"{counts.get(s, 0):,} {s}" for s in ("blocks", "doubts", "notes"))) + "\n")
     for _, line in findings.head(rows).iterrows():
-        where = f"row {line['row']}" if not np.isscalar(line["row"]) or line["row"] == line["row"] and str(line["row"]) != "<NA>" else "file"
-        column = f", {plain(line['column'], 24)}" if line["column"] else ""
+        where = "column" if line["position"] < 0 and line["column"] else "file" if line["position"] < 0 else f"row {line['row']}"
+        heading = plain(line["column"], 24)
+        column = "" if not heading else f" {heading}" if where == "column" else f", {heading}"
         value = f" = {plain(line['value'], 24)!r}" if isinstance(line["value"], str) and line["value"] else ""
         out.write(f"  {line['severity']:7s} {where}{column}{value}: {plain(line['problem'], 90)}; {plain(line['action'], 60)}\n")
     if len(findings) > rows:

@@ -193,12 +193,32 @@ def _section(book: Book, sheet, row: int, words: str) -> int:
     return row + 1
 
 
+# What a printed page holds; the other columns follow on screen.
+PRINTED = (
+    "rank",
+    "joint_id",
+    "utilization",
+    "governing_limit_state",
+    "main_id",
+    "zone",
+    "nominal_size",
+    "dimension_ratio",
+    "ring_class",
+    "loose_ring_rating",
+    "stated_rating",
+    "rating_share",
+    "operating_pressure",
+    "recurrent_surge",
+    "year_installed",
+    "assumed_inputs",
+)
+
+
 def ranking_columns(screening: Screening, table: pd.DataFrame) -> list[Shown]:
     """The ranking's columns for people, in order: result, limit states, inputs."""
     system = screening.settings.units
     shown: list[Shown] = []
-    first = ["rank", "joint_id", "utilization", "governing_limit_state"]
-    names = first + [n for n in table.columns if n not in (*first, "status", "reason", "position", "row")]
+    names = list(PRINTED) + [n for n in table.columns if n not in (*PRINTED, "status", "reason", "position", "row")]
     labels = {name: state.label for name, state in LIMIT_STATES.items()}
     for name in names:
         values = table[name].to_numpy()
@@ -221,6 +241,7 @@ def _ranking_sheet(book: Book, screening: Screening) -> None:
     columns = ranking_columns(screening, table)
     sheet = book.table("Ranking", columns, frozen_columns=2, note="Rank 1 is the joint to look at first. Utilization above 1 is beyond the limit. Screening, not design.")
     last = len(table) + 1
+    sheet.print_area(0, 0, max(last, 2), len(PRINTED) - 1)
     for k, column in enumerate(columns):
         if column.heading.startswith("Utilization"):
             sheet.conditional_format(2, k, max(last, 2), k, {"type": "data_bar", "bar_solid": True, "bar_color": BAR, "min_type": "num", "min_value": 0, "max_type": "num", "max_value": 2, "bar_border_color": INK})
@@ -279,7 +300,7 @@ def _assumptions_sheet(book: Book, screening: Screening) -> None:
 
 def _coverage_sheet(book: Book, screening: Screening) -> None:
     inventory = screening.inventory
-    headings = {name: inventory.raw.headings[k] for name, k in inventory.match.columns.items()}
+    headings = inventory.column_of
     frame = coverage(inventory.gaps.origins, headings)
     columns = [
         Shown("Attribute", frame["label"].to_numpy(dtype=object), None, 28, ""),

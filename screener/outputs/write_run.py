@@ -130,7 +130,7 @@ def run_record(screening: Screening, source, summary, paths) -> dict:
             "file": Path(source).name,
             "sha256": file_hash(source),
             "sheet": inventory.raw.sheet,
-            "columns": {name: inventory.raw.headings[k] for name, k in inventory.match.columns.items()},
+            "columns": inventory.column_of,
         },
         "settings": {**screening.settings.as_dict(), "assessment_year": round(screening.settings.assessment_year, 4)},
         "seed": screening.settings.seed,

@@ -24,8 +24,13 @@ def rank(score: np.ndarray, joint_id: np.ndarray) -> np.ndarray:
     return result
 
 
-def findings_frame(ledger: Ledger, row_numbers: np.ndarray, joint_id: np.ndarray, sheet: str) -> pd.DataFrame:
-    """One line per finding: severity, joint, sheet, row and column as in the file, value, problem, action."""
+def findings_frame(
+    ledger: Ledger, row_numbers: np.ndarray, joint_id: np.ndarray, sheet: str, column_of: dict[str, str]
+) -> pd.DataFrame:
+    """One line per finding: severity, joint, sheet, row and column as in the file, value, problem, action.
+
+    column_of: attribute -> heading, for findings that name only the attribute.
+    """
     parts = []
     for batch in ledger.findings:
         count = len(batch.positions)
@@ -45,7 +50,7 @@ def findings_frame(ledger: Ledger, row_numbers: np.ndarray, joint_id: np.ndarray
                     "joint_id": pd.Series(joint, dtype=object),
                     "sheet": sheet,
                     "row": pd.array(np.where(inside, row, 0), dtype="Int64"),
-                    "column": batch.column,
+                    "column": batch.column or column_of.get(batch.attribute, ""),
                     "attribute": batch.attribute,
                     "value": pd.Series(values, dtype=object),
                     "problem": batch.problem,
