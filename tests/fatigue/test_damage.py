@@ -98,6 +98,12 @@ def test_without_mean_every_correction_leaves_the_amplitude():
         assert corrected == pytest.approx(50)
 
 
+def test_compression_counts_at_its_share():
+    assert mean_stress.part_compressive_range(-30.0, -10.0, 0.6) == pytest.approx(12.0)
+    assert mean_stress.part_compressive_range(10.0, 30.0, 0.6) == pytest.approx(20.0)
+    assert mean_stress.part_compressive_range(-10.0, 30.0, 0.6) == pytest.approx(36.0)
+
+
 def test_shakedown_keeps_the_peak_at_yield():
     mean = mean_stress.mean_with_shakedown(np.array([300.0, 100.0, -400.0]), 40.0, 250.0)
     assert mean.tolist() == [210.0, 100.0, -210.0]
