@@ -47,7 +47,7 @@ def print_check(inventory: Inventory, rows: int, folder: str | None) -> None:
             continue
         read = line["read"] + line["converted"]
         out.write(f"  {plain(line['label'], 34):34s}  {read:6,d}  {line['looked_up']:9,d}  {line['derived']:7,d}  {line['assumed']:7,d}  {line['missing']:7,d}\n")
-    findings = findings_frame(inventory.ledger, raw.row_numbers, inventory.joint_id, raw.sheet)
+    findings = findings_frame(inventory.ledger, raw.row_numbers, inventory.joint_id, raw.sheet, inventory.column_of)
     counts = findings["severity"].astype(str).value_counts()
     out.write("\nFindings: " + (", ".join(f"{counts.get(s, 0):,} {s}" for s in ("blocks", "doubts", "notes"))) + "\n")
     for _, line in findings.head(rows).iterrows():
