@@ -53,7 +53,7 @@ def write_sample(folder: Path, planted_path: Path) -> None:
     layers.clean_table(joints).to_csv(folder / "small_clean.csv", index=False, lineterminator="\n")
     leaks.leak_table(joints, records).to_csv(folder / "leaks.csv", index=False, lineterminator="\n")
     sections.section_table().to_csv(folder / "ring_sections.csv", index=False, lineterminator="\n")
-    loggers.write_loggers(folder / "loggers", lines, joints)
+    loggers.write_loggers(folder / "loggers", lines)
 
 
 if __name__ == "__main__":

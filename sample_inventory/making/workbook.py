@@ -54,7 +54,7 @@ def write_cell(sheet, row: int, column: int, value, formats) -> None:
 
 
 def write_headings(sheet, formats) -> None:
-    sheet.merge_range(0, 0, 0, 12, f"{UTILITY} - INVENTED, no such utility exists", formats["title"])
+    sheet.merge_range(0, 0, 0, 11, f"{UTILITY} - INVENTED, no such utility exists", formats["title"])
     sheet.write_string(1, 0, "Register of flanged joints, HDPE pressure mains (all values made up by a script; evidence of nothing)")
     sheet.write_string(2, 0, "Printed 14 March 2026. US units unless the cell says otherwise.")
     sheet.write_string(3, 0, "Queries: Asset Records, ext. 000")
@@ -93,6 +93,12 @@ def write_register(sheet, cells: pd.DataFrame, order: list[int], formats) -> lis
         at += 1
     sheet.write_string(at - 1 + FOOTER_GAP, 0, FOOTER)
     sheet.freeze_panes(HEADER_ROW + 2, 1)
+    sheet.set_landscape()
+    sheet.set_paper(8)  # A3
+    sheet.fit_to_pages(2, 0)
+    sheet.repeat_rows(HEADER_ROW, HEADER_ROW + 1)
+    sheet.set_row(HEADER_ROW + 1, 30)
+    sheet.set_header("&LINVENTED DATA&R&P of &N")
     sheet.set_column(0, 0, 16)
     sheet.set_column(1, len(COLUMNS) - 1, 11)
     return rows
@@ -103,13 +109,15 @@ def write_workbook(path: Path, cells: pd.DataFrame, order: list[int]) -> list[in
     book = xlsxwriter.Workbook(str(path), {"default_date_format": "dd/mm/yyyy"})
     book.set_properties({"title": f"{UTILITY} (invented)", "comments": INVENTED, "created": CREATED})
     formats = {
-        "title": book.add_format({"bold": True, "font_size": 14, "font_color": "#9C2A00"}),
+        "title": book.add_format({"bold": True, "font_size": 14, "font_color": "#9C2A00", "text_wrap": True}),
         "head": book.add_format({"bold": True, "text_wrap": True, "valign": "top", "align": "center", "bg_color": "#E4E4DC", "border": 1}),
         "date": book.add_format({"num_format": "dd/mm/yyyy"}),
         "wrap": book.add_format({"text_wrap": True, "valign": "top"}),
     }
     notes = book.add_worksheet("Read me")
-    notes.set_column(0, 0, 110)
+    notes.set_column(0, 0, 100)
+    notes.fit_to_pages(1, 0)
+    notes.set_row(0, 60)
     for k, line in enumerate(READ_ME):
         notes.write_string(k, 0, line, formats["title"] if k == 0 else formats["wrap"])
     register = book.add_worksheet(SHEET)
