@@ -83,7 +83,7 @@ def plant_loads(p: Planter) -> None:
     for row in p.pick(inch, 3):
         p.write(row, "recurrent", "occasional_below_recurrent", "60 psi", f"{j.at[row, 'recurrent']:.0f} psi")
         p.write(row, "occasional", "occasional_below_recurrent", "20 psi", f"{j.at[row, 'occasional']:.0f} psi")
-    for row in p.pick(inch & (j["operating"] < 130), 2):
+    for row in p.pick(j["practice"] == "loose", 2):
         p.write(row, "operating", "surge_looks_absolute", f"{j.at[row, 'operating']:.0f} psi", int(j.at[row, "operating"]))
         p.write(row, "recurrent", "surge_looks_absolute", f"{1.8 * j.at[row, 'operating']:.0f} psi", f"{j.at[row, 'recurrent']:.0f} psi")
     for row, text in zip(p.pick(inch & cells["operating"].notna(), 3), ("118000 psi", "-95 psi", "1180 psi"), strict=True):

@@ -94,11 +94,21 @@ def main_layer(lines: dict[str, np.ndarray]) -> geopandas.GeoDataFrame:
 def write_package(path: Path, joints: pd.DataFrame, lines: dict[str, np.ndarray]) -> None:
     """GeoPackage with the layers `flanged_joints` and `mains`; its metadata says that it is invented."""
     path.unlink(missing_ok=True)
-    pyogrio.set_gdal_config_options({"OGR_CURRENT_DATE": WRITTEN})
+    pyogrio.set_gdal_config_options({"OGR_CURRENT_DATE": WRITTEN, "GDAL_PAM_ENABLED": "NO"})
     says = {"TITLE": f"{UTILITY} (invented)", "ABSTRACT": INVENTED, "ORIGIN": "invented"}
     for name, layer, kind in (("flanged_joints", joint_layer(joints), "Point Z"), ("mains", main_layer(lines), "LineString Z")):
-        pyogrio.write_dataframe(layer, path, layer=name, driver="GPKG", append=path.exists(), geometry_type=kind, dataset_metadata=says, layer_metadata=says, layer_options={"IDENTIFIER": f"{name} (invented)", "DESCRIPTION": INVENTED})
-    pyogrio.set_gdal_config_options({"OGR_CURRENT_DATE": None})
+        pyogrio.write_dataframe(
+            layer,
+            path,
+            layer=name,
+            driver="GPKG",
+            append=path.exists(),
+            geometry_type=kind,
+            layer_metadata=says,
+            layer_options={"IDENTIFIER": f"{name} (invented)", "DESCRIPTION": INVENTED},
+        )
+    pyogrio.set_gdal_config_options({"OGR_CURRENT_DATE": None, "GDAL_PAM_ENABLED": None})
+
 
 
 CLEAN = {

@@ -13,7 +13,7 @@ import pandas as pd
 from .network import stream
 from .practice import NEW_YEAR
 
-EXPECTED_LEAKS = 92.0
+EXPECTED_LEAKS = 72.0
 RECORDS_BEGIN = 1991
 PSI = 6894.757
 
@@ -42,7 +42,7 @@ def clamp_reserve(joints: pd.DataFrame, rng: np.random.Generator) -> pd.DataFram
 
 def yearly_rate(joints: pd.DataFrame, reserve: pd.DataFrame, rng: np.random.Generator) -> np.ndarray:
     """Relative rate of leaking per year, before scaling."""
-    rate = np.clip(reserve["reserve"], 0.1, 6.0) ** -1.6
+    rate = np.clip(reserve["reserve"], 0.1, 6.0) ** -1.5
     rate = rate * (1.0 + 0.9 * np.log10(np.maximum(joints["cycles"], 1.0) / 4.0).clip(lower=0.0))
     rate = rate * np.where(joints["environment"].isin(["wet chamber", "aggressive soil"]), 1.5, 1.0)
     rate = rate * np.where(joints["coating"] == "none", 1.3, 1.0)

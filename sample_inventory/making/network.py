@@ -40,7 +40,7 @@ class Zone:
 
 
 ZONES = {
-    "Harbour": Zone("H", 88.0, 0.9, 17.0, 13.0, ("aggressive soil", "moderate soil", "made ground"), (6, 14), (20, 45), 4, 10),
+    "Harbour": Zone("H", 76.0, 0.9, 17.0, 13.0, ("aggressive soil", "moderate soil", "made ground"), (6, 14), (20, 45), 4, 10),
     "Upland": Zone("U", 172.0, 1.6, 14.0, 9.0, ("moderate soil", "mild soil"), (28, 52), (70, 115), 250, 34),
     "Trunk": Zone("T", 122.0, 0.8, 13.5, 10.0, ("moderate soil", "mild soil", "aggressive soil"), (10, 24), (45, 85), 8, 14),
     "Meadow": Zone("M", 104.0, 1.0, 16.0, 12.0, ("mild soil", "moderate soil"), (6, 16), (25, 50), 5, 10),

@@ -72,9 +72,10 @@ def inch_ring(joint, rng) -> dict:
     """Ring, hub and bolts of an inch joint; a class 150 ring above 24 in is one of ASME B16.47."""
     size = joint.size
     choices = RINGS[joint.practice]
+    if joint.practice == "early" and joint.zone != "Harbour":
+        choices = ((1.0, *choices[1][1:]),)  # the low class was bought for the low zone only
     pick = choices[int(rng.choice(len(choices), p=[c[0] for c in choices]))]
     _, standard, ring_class, form, material = pick
-    # A crew used one ring on a main for the most part: the mix differs from main to main.
     if standard == "AWWA C207":
         name, keys, thick = "awwa_c207_ring_flanges", {"awwa_class": ring_class, "nps_in": size}, "thickness_in"
     else:
@@ -98,7 +99,7 @@ def inch_ring(joint, rng) -> dict:
         "ring_section": SECTIONS.get(size, "") if form == "contoured" else "",
         "ring_outside": lookup(name, "od_in", **keys),
         "ring_bore": bore,
-        "ring_thickness": lookup(name, thick, **keys) * (1.35 if form == "contoured" else 1.0),
+        "ring_thickness": lookup(name, thick, **keys),
         "bolt_circle": circle,
         "bolt_count": int(lookup(name, "n_bolts", **keys)),
         "bolt_diameter": bolt,

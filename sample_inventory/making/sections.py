@@ -28,7 +28,7 @@ OUTLINE = (
 
 def section_table() -> pd.DataFrame:
     rows = []
-    for name, size, height in (("cast-8", 8.0, 38.0), ("cast-12", 12.0, 42.0)):
+    for name, size, height in (("cast-8", 8.0, 28.4), ("cast-12", 12.0, 31.8)):
         keys = {"nps_in": size}
         bore = 12.7 * lookup("asme_b16_5_class150_lap_joint", "lap_joint_bore_min_in", **keys)
         rim = 12.7 * lookup("asme_b16_5_class150_lap_joint", "od_in", **keys)
