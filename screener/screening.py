@@ -62,7 +62,12 @@ class Screening:
     limits: LimitStates
     table: pd.DataFrame
     findings: pd.DataFrame
-    assumptions: pd.DataFrame
+
+    @property
+    def assumptions(self) -> pd.DataFrame:
+        """One line per joint and attribute filled; made when asked for, as it can be long."""
+        raw = self.inventory.raw
+        return order.assumptions_frame(self.inventory.ledger, raw.row_numbers, self.inventory.joint_id)
 
     @property
     def ranking(self) -> pd.DataFrame:
@@ -99,8 +104,7 @@ def screen(
     rows = inventory.raw.row_numbers
     findings = order.findings_frame(inventory.ledger, rows, inventory.joint_id, inventory.raw.sheet, inventory.column_of)
     table["doubts"] = _count_by_row(findings, table["position"], Severity.DOUBTS)
-    assumptions = order.assumptions_frame(inventory.ledger, rows, inventory.joint_id)
-    return Screening(inventory, settings, fleet, limits, table, findings, assumptions)
+    return Screening(inventory, settings, fleet, limits, table, findings)
 
 
 def result_table(inventory: Inventory, fleet: Fleet, limits: LimitStates) -> pd.DataFrame:
@@ -135,7 +139,7 @@ def result_table(inventory: Inventory, fleet: Fleet, limits: LimitStates) -> pd.
         parts[name] = _spread(surge[name], at, count) if name in surge else values
     parts["row"] = inventory.raw.row_numbers
     parts["position"] = np.arange(count)
-    table = pd.DataFrame(parts)
+    table = pd.DataFrame({name: as_series(values) for name, values in parts.items()})
     return table.sort_values(["rank", "position"], kind="stable", na_position="last", ignore_index=True)
 
 
@@ -151,11 +155,19 @@ def with_units(table: pd.DataFrame) -> pd.DataFrame:
             parts[name] = table[name]
         else:
             parts[column.machine_name] = to_unit(table[name].to_numpy(dtype=float), column.unit)
-    frame = pd.DataFrame(parts)
+    frame = pd.DataFrame({name: as_series(values) for name, values in parts.items()})
     for name in ("rank", "row", "assumed_inputs", "doubts"):
         if name in frame:
             frame[name] = frame[name].astype("Int64")
     return frame
+
+
+def as_series(values) -> pd.Series:
+    """A column as it is; text stays an object column, which pandas would otherwise convert cell by cell."""
+    if isinstance(values, pd.Series):
+        return values
+    values = np.asarray(values)
+    return pd.Series(values, dtype=object if values.dtype == object else None)
 
 
 def _spread(values: np.ndarray, at: np.ndarray, count: int) -> np.ndarray:

@@ -94,7 +94,11 @@ def tidy(text: str) -> str:
 
 
 def is_missing_word(text: str) -> bool:
-    return tidy(text).lower() in MISSING_WORDS
+    """Whether a cell's text says that there is no value."""
+    if len(text) > 24:
+        return False
+    word = text.strip().lower()
+    return word in MISSING_WORDS or (not word.isascii() and tidy(text).lower() in MISSING_WORDS)
 
 
 @dataclass(frozen=True)

@@ -122,7 +122,7 @@ class Gaps:
     def group_median(self, attribute: str, by: str) -> np.ndarray:
         """Median of the values read in the same group, per row; NaN where the group has none."""
         values = pd.Series(np.where(self.is_read(attribute), self._values[attribute], np.nan))
-        keys = pd.Series(self._values[by], dtype=object)
+        keys = folded(self._values[by])
         medians = values.groupby(keys).median()
         return keys.map(medians).to_numpy(dtype=float)
 
@@ -132,7 +132,7 @@ class Gaps:
         Clear: at least `least` rows of the group have a value and `share` of them agree.
         None and NaN elsewhere.
         """
-        frame = pd.DataFrame({f"k{i}": pd.factorize(np.asarray(key))[0] for i, key in enumerate(keys)})
+        frame = pd.DataFrame({f"k{i}": pd.factorize(folded(key))[0] for i, key in enumerate(keys)})
         group = frame.groupby(list(frame.columns), sort=False).ngroup().to_numpy()
         code, names = pd.factorize(np.where(self.is_read(attribute), self._values[attribute], None))
         winner = np.full(self.rows, None, dtype=object)
@@ -150,3 +150,13 @@ class Gaps:
         winner[ok] = np.asarray(names, dtype=object)[counts.columns.to_numpy()[best[place[ok]]]]
         agreement[ok] = (top / total)[place[ok]]
         return winner, agreement
+
+
+def folded(words) -> pd.Series:
+    """Group names without case and outer spaces, so that "UPLAND" and "Upland" are one zone; numbers as they are."""
+    series = pd.Series(words)
+    if series.dtype.kind in "iufb":
+        return series
+    code, unique = pd.factorize(series)
+    plain = np.array([*(u.strip().casefold() if isinstance(u, str) else u for u in unique), None], dtype=object)
+    return pd.Series(plain[code], dtype=object)

@@ -79,7 +79,7 @@ class Column:
         self.attribute, self.heading, self.unit, self.ledger = attribute, heading, unit, ledger
         self.cells = cells = _as_numbers(cells) if attribute.kind not in ("id", "text") else cells
         self.numeric = cells.dtype.kind in "iuf" and not isinstance(cells.dtype, pd.CategoricalDtype)
-        if not self.numeric:
+        if not self.numeric and attribute.kind not in ("id", "text"):
             self.code, unique = pd.factorize(cells)
             self.unique = list(unique)
             texts = [_text(value) for value in self.unique]
@@ -328,8 +328,9 @@ def read_categories(column: Column) -> tuple[np.ndarray, np.ndarray]:
 
 
 def read_texts(column: Column) -> tuple[np.ndarray, np.ndarray]:
-    texts = pd.Series(written(column.cells), dtype=object)
-    code, unique = pd.factorize(texts)
+    cells = column.cells
+    code, unique = pd.factorize(cells if cells.dtype.kind not in "fM" and cells.dtype != object else pd.Series(written(cells), dtype=object))
+    unique = [text if isinstance(text, str) else _text(text) for text in unique]
     kept = [None if column.attribute.kind == "id" and is_missing_word(t) or not t.strip() else t.strip() for t in unique]
     if column.attribute.kind == "text":
         kept = [None if t is not None and is_missing_word(t) else t for t in kept]

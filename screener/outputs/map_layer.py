@@ -42,12 +42,24 @@ def layer_frame(screening: Screening) -> tuple[geopandas.GeoDataFrame, pd.DataFr
 
 def _plain(cells: pd.Series) -> pd.Series:
     """A column of the file as one type: numbers stay numbers, anything mixed becomes text as written."""
-    if cells.dtype.kind in "iufMb":
+    if cells.dtype != object:
         return cells
-    known = cells[cells.notna()]
-    if len(known) and all(isinstance(value, (int, float)) and not isinstance(value, bool) for value in known):
+    kinds = set(map(type, cells.array)) - {type(None), type(pd.NA), type(pd.NaT)}
+    if kinds <= {int, float}:
         return cells.astype(float)
-    return cells.map(lambda value: None if value is None or value is pd.NA or value != value else str(value)).astype(object)
+    if kinds == {str}:
+        return cells
+    code, unique = pd.factorize(cells)
+    return pd.Series(np.array([*(str(v) for v in unique), None], dtype=object)[code], dtype=object)
+
+
+def write_geoparquet(screening: Screening, path: Path) -> None:
+    """The joints as GeoParquet, for fleets too large for a GeoPackage; joints without a place have an empty geometry."""
+    joints, placeless = layer_frame(screening)
+    if len(placeless):
+        joints = pd.concat([joints, geopandas.GeoDataFrame(placeless, geometry=[None] * len(placeless), crs=joints.crs)], ignore_index=True)
+    with whole_file(path) as temporary:
+        joints.to_parquet(temporary, index=False)
 
 
 def write_geopackage(screening: Screening, path: Path, mains: geopandas.GeoDataFrame | None = None) -> None:

@@ -35,6 +35,7 @@ class Book:
         base = {"font_name": "Calibri", "font_size": 10, "font_color": INK}
         add = self.file.add_format
         self.plain = add({**base, "valign": "top"})
+        self.text = add({**base, "valign": "top", "indent": 1})
         self.wrapped = add({**base, "text_wrap": True, "valign": "top"})
         self.title = add({**base, "bold": True, "font_size": 16})
         self.section = add({**base, "bold": True, "font_size": 12, "bottom": 1, "bottom_color": RULE})
@@ -47,7 +48,7 @@ class Book:
 
     def format_of(self, column: Shown):
         if column.digits is None:
-            return self.plain
+            return self.text
         if "ear installed" in column.heading or column.heading.startswith("Last tightened"):
             return self.year
         return self.numbers[min(column.digits, 3)]
@@ -122,7 +123,7 @@ def _summary_sheet(book: Book, screening: Screening, summary: Summary) -> None:
     for line in summary.sentences:
         sheet.merge_range(row, 0, row, 7, "", book.wrapped)
         sheet.write_string(row, 0, clean_text(line), book.wrapped)
-        sheet.set_row(row, 15 * (1 + len(line) // 118))
+        sheet.set_row(row, 15 * (1 + len(line) // 140))
         row += 1
     row = _section(book, sheet, row + 1, "Rows of the file")
     for words, count in summary.row_counts:
@@ -182,7 +183,7 @@ def _summary_sheet(book: Book, screening: Screening, summary: Summary) -> None:
     for line in CAUTIONS:
         sheet.merge_range(row, 0, row, 7, "", book.caution)
         sheet.write_string(row, 0, line, book.caution)
-        sheet.set_row(row, 15 * (1 + len(line) // 112))
+        sheet.set_row(row, 15 * (1 + len(line) // 135))
         row += 1
 
 
@@ -241,10 +242,11 @@ def _ranking_sheet(book: Book, screening: Screening) -> None:
     columns = ranking_columns(screening, table)
     sheet = book.table("Ranking", columns, frozen_columns=2, note="Rank 1 is the joint to look at first. Utilization above 1 is beyond the limit. Screening, not design.")
     last = len(table) + 1
+    top = float(np.nanquantile(table["utilization"], 0.99)) if len(table) else 2.0
     sheet.print_area(0, 0, max(last, 2), len(PRINTED) - 1)
     for k, column in enumerate(columns):
         if column.heading.startswith("Utilization"):
-            sheet.conditional_format(2, k, max(last, 2), k, {"type": "data_bar", "bar_solid": True, "bar_color": BAR, "min_type": "num", "min_value": 0, "max_type": "num", "max_value": 2, "bar_border_color": INK})
+            sheet.conditional_format(2, k, max(last, 2), k, {"type": "data_bar", "bar_solid": True, "bar_color": BAR, "min_type": "num", "min_value": 0, "max_type": "num", "max_value": max(2.0, round(top, 1)), "bar_border_color": INK})
 
 
 def _not_ranked_sheet(book: Book, screening: Screening) -> None:

@@ -11,17 +11,20 @@ import numpy as np
 import pandas as pd
 import pyarrow
 import pyarrow.csv
+import pyarrow.parquet
 
 import screener
 from screener.columns import inventory_attributes
-from screener.outputs.map_layer import write_geopackage
+from screener.outputs.map_layer import write_geopackage, write_geoparquet
 from screener.outputs.run_folder import file_hash, make_folder, whole_file, write_json
 from screener.outputs.shown import CAUTIONS
 from screener.outputs.summary import summarize
-from screener.screening import Screening
+from screener.priority.ranking import assumption_frames
+from screener.screening import Screening, as_series
 
-CSV_ASSUMPTIONS = 200_000
 WORKBOOK_ROWS = 250_000
+LAYER_ROWS = 250_000
+"""Above this many rows the map layer is GeoParquet and the workbook is left out."""
 
 
 def write_run(
@@ -42,15 +45,19 @@ def write_run(
     paths["findings"] = folder / "findings.csv"
     write_csv(guard_formulas(screening.findings.drop(columns="position")), paths["findings"])
     paths["assumptions"] = folder / "assumptions.parquet"
-    with whole_file(paths["assumptions"]) as temporary:
-        screening.assumptions.to_parquet(temporary, index=False)
+    lines = write_assumptions(screening, paths["assumptions"])
     progress("writing joints.parquet")
     paths["values"] = folder / "joints.parquet"
     with whole_file(paths["values"]) as temporary:
         run_values(screening).to_parquet(temporary, index=False)
-    progress("writing joints.gpkg")
-    paths["layer"] = folder / "joints.gpkg"
-    write_geopackage(screening, paths["layer"])
+    if len(screening.table) <= LAYER_ROWS:
+        progress("writing joints.gpkg")
+        paths["layer"] = folder / "joints.gpkg"
+        write_geopackage(screening, paths["layer"])
+    else:
+        progress("writing joints_layer.parquet")
+        paths["layer"] = folder / "joints_layer.parquet"
+        write_geoparquet(screening, paths["layer"])
     if workbook and len(screening.table) <= WORKBOOK_ROWS:
         from screener.outputs.workbook import write_workbook
 
@@ -58,8 +65,25 @@ def write_run(
         paths["workbook"] = folder / "ranking.xlsx"
         write_workbook(screening, paths["workbook"], summary)
     progress("writing run.json")
-    write_json(folder / "run.json", run_record(screening, source, summary, paths))
+    write_json(folder / "run.json", run_record(screening, source, summary, paths, lines))
     return paths
+
+
+def write_assumptions(screening: Screening, path: Path) -> int:
+    """assumptions.parquet, one row group per rule; returns the number of lines."""
+    raw = screening.inventory.raw
+    text, number = pyarrow.string(), pyarrow.float32()
+    word = pyarrow.dictionary(pyarrow.int8(), text)
+    schema = pyarrow.schema(
+        [("joint_id", text), ("row", pyarrow.int64()), ("attribute", word), ("origin", word), ("value", pyarrow.float64()),
+         ("value_text", text), ("rule", word), ("source", word), ("scatter", number), ("low", number), ("high", number)]
+    )
+    lines = 0
+    with whole_file(path) as temporary, pyarrow.parquet.ParquetWriter(temporary, schema) as writer:
+        for frame in assumption_frames(screening.inventory.ledger, raw.row_numbers, screening.inventory.joint_id):
+            writer.write_table(pyarrow.Table.from_pandas(frame, schema=schema, preserve_index=False))
+            lines += len(frame)
+    return lines
 
 
 def run_values(screening: Screening) -> pd.DataFrame:
@@ -72,19 +96,21 @@ def run_values(screening: Screening) -> pd.DataFrame:
             values = np.array(["; ".join(f"{d:.3f}" for d in v) if isinstance(v, tuple) else None for v in values], dtype=object)
         parts[name] = values
         parts[f"{name}__origin"] = gaps.origin(name)
-    return pd.DataFrame(parts)
+    return pd.DataFrame({name: as_series(values) for name, values in parts.items()})
 
 
 def guard_formulas(frame: pd.DataFrame) -> pd.DataFrame:
     """Text that a spreadsheet would run as a formula gets a leading apostrophe in CSV."""
-    frame = frame.copy()
+    changed = {}
     for name in frame.columns:
         if frame[name].dtype.kind in "OUT" or isinstance(frame[name].dtype, (pd.StringDtype, pd.CategoricalDtype)):
-            text = frame[name].astype(object)
-            risky = text.map(lambda v: isinstance(v, str) and v.startswith(("=", "+", "-", "@", "\t", "\r")) and not _is_number(v))
-            if risky.any():
-                frame[name] = text.where(~risky, "'" + text.astype(str))
-    return frame
+            code, unique = pd.factorize(frame[name])
+            unique = list(unique)
+            risky = [isinstance(v, str) and v.startswith(("=", "+", "-", "@", "\t", "\r")) and not _is_number(v) for v in unique]
+            if any(risky):
+                guarded = ["'" + v if bad else v for v, bad in zip(unique, risky, strict=True)]
+                changed[name] = pd.Series(np.array([*guarded, None], dtype=object)[code], index=frame.index, dtype=object)
+    return frame.assign(**changed) if changed else frame
 
 
 def _is_number(text: str) -> bool:
@@ -105,7 +131,9 @@ def write_csv(frame: pd.DataFrame, path: Path) -> None:
         elif values.dtype.kind in "iub" or isinstance(values.dtype, pd.Int64Dtype):
             columns[name] = pyarrow.Array.from_pandas(values)
         else:
-            columns[name] = pyarrow.array([None if v is None or v is pd.NA or v != v else str(v) for v in values.astype(object)], type=pyarrow.string())
+            code, unique = pd.factorize(values)
+            words = pyarrow.array([*(str(v) for v in unique), None], type=pyarrow.string())
+            columns[name] = words.take(pyarrow.array(np.where(code < 0, len(unique), code)))
     with whole_file(path) as temporary:
         options = pyarrow.csv.WriteOptions(quoting_style="needed", quoting_header="needed")
         pyarrow.csv.write_csv(pyarrow.table(columns), temporary, options)
@@ -119,7 +147,7 @@ def seven_digits(values: np.ndarray) -> np.ndarray:
     return np.where(scale >= 1.0, np.round(values * scale) / scale, np.round(values * scale) * np.round(1.0 / np.minimum(scale, 1.0)))
 
 
-def run_record(screening: Screening, source, summary, paths) -> dict:
+def run_record(screening: Screening, source, summary, paths, assumption_lines: int) -> dict:
     """run.json: what went in, what came out, with what settings and versions."""
     inventory = screening.inventory
     severities = screening.findings["severity"].astype(str).value_counts()
@@ -134,7 +162,7 @@ def run_record(screening: Screening, source, summary, paths) -> dict:
         },
         "settings": {**screening.settings.as_dict(), "assessment_year": round(screening.settings.assessment_year, 4)},
         "seed": screening.settings.seed,
-        "counts": {**screening.counts, "findings": {name: int(count) for name, count in severities.items()}, "assumptions": len(screening.assumptions)},
+        "counts": {**screening.counts, "findings": {name: int(count) for name, count in severities.items()}, "assumptions": assumption_lines},
         "not_ranked_reasons": dict(summary.row_counts[3:]),
         "summary": summary.sentences,
         "files": {role: path.name for role, path in paths.items()},

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+
 import numpy as np
 import pandas as pd
 
@@ -69,47 +71,47 @@ def findings_frame(
     return frame.sort_values(["severity", "position", "code"], kind="stable", ignore_index=True)
 
 
-def assumptions_frame(ledger: Ledger, row_numbers: np.ndarray, joint_id: np.ndarray) -> pd.DataFrame:
-    """One line per joint and attribute filled: value (SI), rule, source, scatter. Repeated text is categorical."""
-    if not ledger.assumptions:
-        return pd.DataFrame(
-            columns=["joint_id", "row", "attribute", "origin", "value", "value_text", "rule", "source", "scatter", "low", "high"]
+ASSUMPTION_COLUMNS = ("joint_id", "row", "attribute", "origin", "value", "value_text", "rule", "source", "scatter", "low", "high")
+
+
+def assumption_frames(ledger: Ledger, row_numbers: np.ndarray, joint_id: np.ndarray) -> Iterator[pd.DataFrame]:
+    """One frame per rule: a line per joint filled, values SI. Together they may hold tens of millions of lines."""
+    for batch in ledger.assumptions:
+        count = len(batch.positions)
+        numeric = batch.values.dtype.kind == "f"
+
+        def same(word: str, count: int = count) -> pd.Categorical:
+            return pd.Categorical.from_codes(np.zeros(count, dtype=np.int8), [word])
+
+        yield pd.DataFrame(
+            {
+                "joint_id": pd.Series(joint_id[batch.positions], dtype=object),
+                "row": row_numbers[batch.positions],
+                "attribute": same(batch.attribute),
+                "origin": same(Origin(batch.origin).name.lower()),
+                "value": batch.values if numeric else np.full(count, np.nan),
+                "value_text": pd.Series([None] * count if numeric else batch.values, dtype=object),
+                "rule": same(batch.rule),
+                "source": same(batch.source),
+                "scatter": batch.scatter.astype(np.float32),
+                "low": batch.low.astype(np.float32),
+                "high": batch.high.astype(np.float32),
+            }
         )
-    sizes = [len(batch.positions) for batch in ledger.assumptions]
-    positions = np.concatenate([batch.positions for batch in ledger.assumptions])
 
-    def spread(words: list[str]) -> pd.Categorical:
-        names = list(dict.fromkeys(words))
-        code = np.repeat([names.index(word) for word in words], sizes)
-        return pd.Categorical.from_codes(code, names)
 
-    def numbers(name: str) -> np.ndarray:
-        return np.concatenate([getattr(batch, name) for batch in ledger.assumptions]).astype(np.float32)
-
-    value = np.concatenate(
-        [batch.values if batch.values.dtype.kind == "f" else np.full(len(batch.values), np.nan) for batch in ledger.assumptions]
-    )
-    text = np.concatenate(
-        [
-            np.full(len(batch.values), None, dtype=object) if batch.values.dtype.kind == "f" else batch.values.astype(object)
-            for batch in ledger.assumptions
-        ]
-    )
-    return pd.DataFrame(
-        {
-            "joint_id": joint_id[positions],
-            "row": row_numbers[positions],
-            "attribute": spread([batch.attribute for batch in ledger.assumptions]),
-            "origin": spread([Origin(batch.origin).name.lower() for batch in ledger.assumptions]),
-            "value": value,
-            "value_text": text,
-            "rule": spread([batch.rule for batch in ledger.assumptions]),
-            "source": spread([batch.source for batch in ledger.assumptions]),
-            "scatter": numbers("scatter"),
-            "low": numbers("low"),
-            "high": numbers("high"),
-        }
-    )
+def assumptions_frame(ledger: Ledger, row_numbers: np.ndarray, joint_id: np.ndarray) -> pd.DataFrame:
+    """All lines of `assumption_frames` in one frame."""
+    frames = list(assumption_frames(ledger, row_numbers, joint_id))
+    if not frames:
+        return pd.DataFrame(columns=list(ASSUMPTION_COLUMNS))
+    for name in ("attribute", "origin", "rule", "source"):
+        merged = pd.api.types.union_categoricals([frame[name] for frame in frames])
+        start = 0
+        for frame in frames:
+            frame[name] = pd.Categorical.from_codes(merged.codes[start : start + len(frame)], merged.categories)
+            start += len(frame)
+    return pd.concat(frames, ignore_index=True)
 
 
 def rule_counts(ledger: Ledger, rows: int) -> pd.DataFrame:
