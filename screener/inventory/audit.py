@@ -250,9 +250,38 @@ def settle_identities(gaps: Gaps, ledger, row_numbers, column_of, cells) -> tupl
     return shown.to_numpy(dtype=object), repeat
 
 
-def audit_places(ledger, x, y, repeat) -> None:
-    """Joints at the very same place."""
+def rows_without_a_joint(gaps: Gaps, ledger, column_of) -> np.ndarray:
+    """Mask of rows that hold a name and nothing else: a note under the table, not a joint."""
+    filled = sum((gaps.is_read(name).astype(int) for name in column_of if name != "joint_id"), np.zeros(gaps.rows, dtype=int))
+    empty = filled == 0
+    ledger.finding(
+        "not_a_joint",
+        Severity.BLOCKS,
+        empty,
+        attribute="joint_id",
+        values=gaps["joint_id"][empty],
+        problem="the row holds nothing but a name",
+        action="taken as a note under the table, not ranked",
+    )
+    return empty
+
+
+def audit_places(ledger, x, y, repeat, main) -> None:
+    """Joints at the very same place, and joints far from the rest of their main."""
     frame = pd.DataFrame({"x": x, "y": y})
+    groups = frame.groupby(pd.Series(main, dtype=object))
+    apart = np.hypot(*(frame[axis] - groups[axis].transform("median") for axis in ("x", "y"))).to_numpy(dtype=float)
+    usual = pd.Series(apart).groupby(pd.Series(main, dtype=object)).transform("median").to_numpy(dtype=float)
+    enough = groups["x"].transform("count").to_numpy() >= 5
+    far = enough & (apart > 20.0 * np.maximum(usual, 1e-9))
+    ledger.finding(
+        "place_far_from_main",
+        Severity.DOUBTS,
+        far,
+        attribute="x_coordinate",
+        problem="more than 20 times as far from the main's middle as its other joints; perhaps swapped or missing coordinates",
+        action="kept where the file puts it; check the position",
+    )
     known = frame.notna().all(axis=1).to_numpy() & ~repeat
     twice = np.zeros(len(frame), dtype=bool)
     twice[known] = frame[known].duplicated(keep="first").to_numpy()

@@ -9,7 +9,7 @@ from screener.inventory.gaps import Gaps
 from screener.records import Origin, Severity
 from screener.settings import Settings
 from screener.standards import materials
-from screener.standards.rings import CLASSES_OF, INCH_STANDARDS, STANDARDS, ring_rows, ring_table
+from screener.standards.rings import CLASSES, CLASSES_OF, INCH_STANDARDS, STANDARDS, ring_rows, ring_table
 from screener.standards.tables import INCH
 
 ERAS = (1900, 1985, 1997, 2007, 2015, 2100)
@@ -67,12 +67,81 @@ def check_ring_class(gaps: Gaps) -> None:
     gaps.reject("ring_class", wrong)
 
 
+def classes_that_fit(gaps: Gaps) -> dict[str, np.ndarray]:
+    """Class -> mask of joints whose dimensions in the file agree with the class at their size."""
+    table = ring_table()
+    slack = {"ring_outside_diameter": 0.006, "bolt_circle_diameter": 0.004, "bolt_count": 0.5, "bolt_diameter": 0.0016}
+    fits = {}
+    for ring_class in CLASSES:
+        row = ring_rows(gaps["ring_standard"], np.full(gaps.rows, ring_class, dtype=object), gaps["flange_size"])
+        good = row >= 0
+        for attribute, tolerance in slack.items():
+            column = {"ring_outside_diameter": "outside_diameter"}.get(attribute, attribute)
+            expected = getattr(table, column)[row]
+            good &= ~gaps.is_read(attribute) | (np.abs(gaps[attribute] - expected) <= tolerance)
+        fits[ring_class] = good
+    return fits
+
+
+def fill_class_from_dimensions(gaps: Gaps, fits: dict[str, np.ndarray]) -> None:
+    """The class that alone has the drilling, or the thickness, that the file gives."""
+    table = ring_table()
+    measured = np.zeros(gaps.rows, dtype=bool)
+    for attribute in ("ring_outside_diameter", "bolt_circle_diameter", "bolt_count", "bolt_diameter"):
+        measured |= gaps.is_read(attribute)
+    matrix = np.column_stack([fits[c] for c in CLASSES])
+    only = matrix.sum(axis=1) == 1
+    names = np.array(CLASSES, dtype=object)
+    gaps.fill(
+        "ring_class",
+        names[matrix.argmax(axis=1)],
+        where=measured & only & _has_rivals(gaps),
+        origin=Origin.DERIVED,
+        rule="the only class of the standard with the drilling in the file",
+        source="the standard's table",
+        scatter=0.05,
+    )
+    misfit = np.full(matrix.shape, np.inf)
+    for k, ring_class in enumerate(CLASSES):
+        row = ring_rows(gaps["ring_standard"], np.full(gaps.rows, ring_class, dtype=object), gaps["flange_size"])
+        ratio = gaps["ring_thickness"] / np.where(row >= 0, table.thickness[row], np.nan)
+        misfit[:, k] = np.where(fits[ring_class] & np.isfinite(ratio), np.abs(np.log(np.where(np.isfinite(ratio), ratio, 1.0))), np.inf)
+    best = misfit.argmin(axis=1)
+    close = misfit[np.arange(gaps.rows), best] < 0.08
+    gaps.fill(
+        "ring_class",
+        names[best],
+        where=close & gaps.is_read("ring_thickness"),
+        origin=Origin.DERIVED,
+        rule="class whose thickness is within 8 % of the one in the file",
+        source="the standard's table",
+        scatter=0.1,
+    )
+
+
+def _has_rivals(gaps: Gaps) -> np.ndarray:
+    """Standards with more than one class, where the drilling can tell them apart."""
+    return np.isin(gaps["ring_standard"], [name for name, classes in CLASSES_OF.items() if len(classes) > 1])
+
+
 def fill_ring_class(gaps: Gaps, settings: Settings) -> None:
-    """Class by what the file knows of like joints, else the class most met in the trade."""
+    """Class by what the file says of the ring and of like joints, else the class most met in the trade."""
+    fits = classes_that_fit(gaps)
+    fill_class_from_dimensions(gaps, fits)
     era = np.digitize(np.where(gaps.known("year_installed"), gaps["year_installed"], 0.0), ERAS).astype(float)
     size = np.where(gaps.known("flange_size"), gaps["flange_size"], -1.0)
     standard = gaps["ring_standard"]
     large = np.digitize(size, [0.28, 0.48])
+    ratio = np.where(gaps.known("dimension_ratio"), gaps["dimension_ratio"], 17.0)
+    metric = standard == "EN 1092-1"
+
+    def fitting(classes: np.ndarray) -> np.ndarray:
+        """Mask of joints whose own dimensions allow the class proposed."""
+        allowed = np.zeros(gaps.rows, dtype=bool)
+        for name, good in fits.items():
+            allowed |= (classes == name) & good
+        return allowed
+
     for keys, words in (
         ([standard, era, size, gaps["contractor"]], "same standard, era, size and crew"),
         ([standard, era, size], "same standard, era and size"),
@@ -82,23 +151,23 @@ def fill_ring_class(gaps: Gaps, settings: Settings) -> None:
         gaps.fill(
             "ring_class",
             vote,
+            where=fitting(vote),
             rule=f"class of most joints on record with the {words}",
             source="this inventory",
             scatter=1.0 - np.where(np.isnan(agreement), 1.0, agreement),
         )
-    for name, ring_class in (("AWWA C207", "D"), ("ASME B16.5", "150"), ("ASME B16.47 A", "150"), ("ASME B16.1", "125")):
-        gaps.fill(
-            "ring_class",
-            ring_class,
-            where=standard == name,
-            rule=f"class {ring_class} where nothing else is known",
-            source=PRACTICE,
-            scatter=0.0 if ring_class == "150" else 0.3,
-        )
-    ratio = np.where(gaps.known("dimension_ratio"), gaps["dimension_ratio"], 17.0)
-    metric = standard == "EN 1092-1"
-    gaps.fill("ring_class", "PN16", where=metric & (ratio < 14.0), rule="PN16 drilling on thick-walled metric pipe", source=PRACTICE, scatter=0.3)
-    gaps.fill("ring_class", "PN10", where=metric, rule="PN10 drilling on thin-walled metric pipe", source=PRACTICE, scatter=0.3)
+    defaults = [
+        (standard == "AWWA C207", "D", "class D where nothing else is known"),
+        (np.isin(standard, ["ASME B16.5", "ASME B16.47 A"]), "150", "class 150, the standard's only class here"),
+        (standard == "ASME B16.1", "125", "class 125 where nothing else is known"),
+        (metric & (ratio < 14.0), "PN16", "PN16 drilling on thick-walled metric pipe"),
+        (metric, "PN10", "PN10 drilling on thin-walled metric pipe"),
+    ]
+    for must_fit in (True, False):
+        others = [(standard == name, c, f"class {c}, which fits the dimensions in the file") for name, cs in CLASSES_OF.items() for c in cs]
+        for where, ring_class, rule in defaults + (others if must_fit else []):
+            scatter = 0.0 if ring_class == "150" else 0.3
+            gaps.fill("ring_class", ring_class, where=where & (fits[ring_class] | (not must_fit)), rule=rule, source=PRACTICE, scatter=scatter)
 
 
 def fill_ring_dimensions(gaps: Gaps) -> np.ndarray:

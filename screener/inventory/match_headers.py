@@ -120,6 +120,14 @@ def _candidates(heading: str) -> list[Matched]:
                     strength += 0.05
                 reason = what + (f", unit {unit} in the heading" if unit else "")
                 found.append(Matched(heading, name, unit, reason, strength))
+    if not found:
+        # A merged heading above may have been joined on: the words below it speak for themselves.
+        words = heading.split()
+        for start in range(1, len(words)):
+            tail = " ".join(words[start:])
+            if normal(tail.replace("_", " ")) in vocabulary or _without_unit(tail, attributes["operating_pressure"]) in vocabulary:
+                below = _candidates(tail)
+                return [Matched(heading, m.attribute, m.unit, f"{m.reason}, under {' '.join(words[:start])!r}", 0.9 * m.strength) for m in below]
     if not found and len(plain) > 4:
         close = difflib.get_close_matches(plain, vocabulary, n=1, cutoff=CLOSE_ENOUGH)
         if close:

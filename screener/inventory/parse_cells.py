@@ -315,7 +315,9 @@ def read_categories(column: Column) -> tuple[np.ndarray, np.ndarray]:
         column = Column(column.attribute, column.heading, column.unit, pd.Series(written(column.cells), dtype=object), column.ledger)
     values, doubts, errors, same = [], [], [], []
     for text, missing in zip(column.texts, column.missing, strict=True):
-        choice, doubt, error = (None, "", "") if missing else one.read_category(text, column.attribute)
+        choice, doubt, error = one.read_category(text, column.attribute)
+        if missing and (doubt or error):  # "none" is a choice of some attributes and a gap in others
+            choice, doubt, error = None, "", ""
         values.append(choice)
         doubts.append(doubt)
         errors.append(f"{error}; accepted: {', '.join(column.attribute.choices)}" if error else "")

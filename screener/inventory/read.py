@@ -77,7 +77,7 @@ def read_inventory(
     column_of = {attribute: raw.headings[k] for attribute, k in parsed.columns.items()}
     joint_id, repeat = audit.settle_identities(gaps, ledger, raw.row_numbers, column_of, raw.cells)
     x, y = (raw.x, raw.y) if raw.x is not None else (gaps["x_coordinate"], gaps["y_coordinate"])
-    audit.audit_places(ledger, x, y, repeat)
+    audit.audit_places(ledger, x, y, repeat, gaps["main_id"])
     if raw.x is None and gaps.known("x_coordinate").any():
         ledger.finding(
             "coordinates_without_system",
@@ -90,6 +90,7 @@ def read_inventory(
         )
     audit.audit_rows(gaps, column_of, parsed.as_written, settings)
     blocked = {"repeats an earlier row exactly": repeat}
+    blocked["holds nothing but a name; a note, not a joint"] = audit.rows_without_a_joint(gaps, ledger, column_of)
     fill_gaps(gaps, settings, column_of, parsed.as_written, blocked)
     reason = _first_reason(blocked, len(raw))
     rows = np.flatnonzero(reason == "")
