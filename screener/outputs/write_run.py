@@ -70,17 +70,18 @@ def write_run(
 
 
 def write_assumptions(screening: Screening, path: Path) -> int:
-    """assumptions.parquet, one row group per rule; returns the number of lines."""
+    """assumptions.parquet, one row group per rule, keyed by the row of the file; returns the number of lines."""
     raw = screening.inventory.raw
     text, number = pyarrow.string(), pyarrow.float32()
     word = pyarrow.dictionary(pyarrow.int8(), text)
     schema = pyarrow.schema(
-        [("joint_id", text), ("row", pyarrow.int64()), ("attribute", word), ("origin", word), ("value", pyarrow.float64()),
+        [("row", pyarrow.int64()), ("attribute", word), ("origin", word), ("value", pyarrow.float64()),
          ("value_text", text), ("rule", word), ("source", word), ("scatter", number), ("low", number), ("high", number)]
     )
     lines = 0
-    with whole_file(path) as temporary, pyarrow.parquet.ParquetWriter(temporary, schema) as writer:
-        for frame in assumption_frames(screening.inventory.ledger, raw.row_numbers, screening.inventory.joint_id):
+    words = ["attribute", "origin", "rule", "source", "value_text"]
+    with whole_file(path) as temporary, pyarrow.parquet.ParquetWriter(temporary, schema, use_dictionary=words, write_statistics=False) as writer:
+        for frame in assumption_frames(screening.inventory.ledger, raw.row_numbers):
             writer.write_table(pyarrow.Table.from_pandas(frame, schema=schema, preserve_index=False))
             lines += len(frame)
     return lines

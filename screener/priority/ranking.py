@@ -71,10 +71,10 @@ def findings_frame(
     return frame.sort_values(["severity", "position", "code"], kind="stable", ignore_index=True)
 
 
-ASSUMPTION_COLUMNS = ("joint_id", "row", "attribute", "origin", "value", "value_text", "rule", "source", "scatter", "low", "high")
+ASSUMPTION_COLUMNS = ("row", "attribute", "origin", "value", "value_text", "rule", "source", "scatter", "low", "high")
 
 
-def assumption_frames(ledger: Ledger, row_numbers: np.ndarray, joint_id: np.ndarray) -> Iterator[pd.DataFrame]:
+def assumption_frames(ledger: Ledger, row_numbers: np.ndarray) -> Iterator[pd.DataFrame]:
     """One frame per rule: a line per joint filled, values SI. Together they may hold tens of millions of lines."""
     for batch in ledger.assumptions:
         count = len(batch.positions)
@@ -85,7 +85,6 @@ def assumption_frames(ledger: Ledger, row_numbers: np.ndarray, joint_id: np.ndar
 
         yield pd.DataFrame(
             {
-                "joint_id": pd.Series(joint_id[batch.positions], dtype=object),
                 "row": row_numbers[batch.positions],
                 "attribute": same(batch.attribute),
                 "origin": same(Origin(batch.origin).name.lower()),
@@ -101,10 +100,12 @@ def assumption_frames(ledger: Ledger, row_numbers: np.ndarray, joint_id: np.ndar
 
 
 def assumptions_frame(ledger: Ledger, row_numbers: np.ndarray, joint_id: np.ndarray) -> pd.DataFrame:
-    """All lines of `assumption_frames` in one frame."""
-    frames = list(assumption_frames(ledger, row_numbers, joint_id))
+    """All lines of `assumption_frames` in one frame, with the joint's id."""
+    frames = list(assumption_frames(ledger, row_numbers))
+    for frame, batch in zip(frames, ledger.assumptions, strict=True):
+        frame.insert(0, "joint_id", pd.Series(joint_id[batch.positions], dtype=object))
     if not frames:
-        return pd.DataFrame(columns=list(ASSUMPTION_COLUMNS))
+        return pd.DataFrame(columns=["joint_id", *ASSUMPTION_COLUMNS])
     for name in ("attribute", "origin", "rule", "source"):
         merged = pd.api.types.union_categoricals([frame[name] for frame in frames])
         start = 0
