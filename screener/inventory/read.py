@@ -13,7 +13,7 @@ from screener.inventory.gaps import Gaps
 from screener.inventory.mapping_file import read_mapping
 from screener.inventory.match_headers import HeaderMatch, match_headers
 from screener.inventory.open_file import open_table
-from screener.inventory.parse_cells import parse_cells
+from screener.inventory.parse_cells import parse_cells, written
 from screener.records import Fleet, Ledger, RawTable, Severity
 from screener.settings import Settings
 
@@ -42,6 +42,12 @@ class Inventory:
     def column_of(self) -> dict[str, str]:
         """Heading of the column each attribute was read from."""
         return {name: self.raw.headings[k] for name, k in self.match.columns.items()}
+
+    def as_written(self, attribute: str) -> np.ndarray:
+        """The attribute's cells as text as they stand in the file; None where empty or without a column."""
+        if attribute not in self.match.columns:
+            return np.full(len(self), None, dtype=object)
+        return written(self.raw.cells.iloc[:, self.match.columns[attribute]])
 
     @property
     def place(self) -> tuple[np.ndarray | None, np.ndarray | None]:

@@ -88,7 +88,7 @@ def write_assumptions(screening: Screening, path: Path) -> int:
 
 
 def run_values(screening: Screening) -> pd.DataFrame:
-    """Every attribute of every row, SI, with its origin code; what later commands read."""
+    """Every attribute of every row, SI, with its origin code and the cell as written; what later commands read."""
     gaps = screening.inventory.gaps
     parts = {"position": np.arange(len(screening.inventory)), "row": screening.inventory.raw.row_numbers, "shown_id": screening.inventory.joint_id}
     for name in gaps.values:
@@ -97,6 +97,8 @@ def run_values(screening: Screening) -> pd.DataFrame:
             values = np.array(["; ".join(f"{d:.3f}" for d in v) if isinstance(v, tuple) else None for v in values], dtype=object)
         parts[name] = values
         parts[f"{name}__origin"] = gaps.origin(name)
+        if name in screening.inventory.match.columns:
+            parts[f"{name}__written"] = screening.inventory.as_written(name)
     return pd.DataFrame({name: as_series(values) for name, values in parts.items()})
 
 
