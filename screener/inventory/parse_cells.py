@@ -205,7 +205,7 @@ def read_quantities(column: Column) -> tuple[np.ndarray, np.ndarray]:
     values = np.full(len(numbers), np.nan)
     for unit in {u for u in units[np.isfinite(numbers)] if u}:
         here = units == unit
-        values[here] = from_unit(numbers[here], unit)
+        values[here] = from_unit(numbers[here], unit, attribute.dimension)
     undecided = np.isfinite(numbers) & (units == "")
     column.note("unit_unknown", Severity.DOUBTS, undecided, f"a bare number, and no unit makes it a usual {attribute.label.lower()}", "cell not used; write the unit in the heading or the cell")
     plain = {"m": 1.0, "Pa": 1.0, "N m": 1.0, "C": 1.0, "K": 1.0, "rad": 1.0, "money": 1.0}

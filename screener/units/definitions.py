@@ -92,6 +92,8 @@ _LABELS = {
 
 
 def _factor(unit: str, dimension: str = "") -> tuple[float, float]:
+    if unit == "K" and dimension != "temperature":
+        return UNITS["temperature_difference"]["K"]
     for units in [UNITS[dimension]] if dimension else UNITS.values():
         if unit in units:
             return units[unit]
@@ -104,7 +106,7 @@ def _factor(unit: str, dimension: str = "") -> tuple[float, float]:
 def to_unit(values_si, unit: str, dimension: str = ""):
     """SI values in `unit` (a shown unit or a machine suffix). Temperatures: from deg C.
 
-    dimension is needed only for "K", which is a temperature and a difference.
+    dimension is needed only for "K": a difference, unless "temperature" is said.
     """
     factor, offset = _factor(unit, dimension)
     return (np.asarray(values_si, dtype=float) - offset) / factor
