@@ -52,6 +52,7 @@ def _parser() -> argparse.ArgumentParser:
         made.add_argument("file", help="inventory: workbook, delimited text, GeoPackage, shapefile, GeoJSON, Parquet")
         made.add_argument("--sheet", help="sheet or layer to read; default: the one that looks most like an inventory")
         made.add_argument("--mapping", metavar="TOML", help="which column is which attribute, as written by 'check'")
+        made.add_argument("--sections", metavar="CSV", help="ring sections as polygons (default: ring_sections.csv beside the inventory)")
         made.add_argument("--settings", metavar="TOML", help="settings file")
         made.add_argument("--units", choices=("us", "metric"), help="units shown to people (default us)")
 
@@ -142,7 +143,7 @@ def _check(given, progress) -> int:
 
     settings = _settings(given)
     progress("reading and auditing")
-    inventory = read_inventory(given.file, settings, mapping=given.mapping)
+    inventory = read_inventory(given.file, settings, mapping=given.mapping, sections=given.sections)
     progress.done()
     if given.out:
         write_check(inventory, given.out)
@@ -158,7 +159,7 @@ def _screen(given, progress) -> int:
 
     settings = _settings(given)
     progress("reading and auditing")
-    inventory = read_inventory(given.file, settings, mapping=given.mapping)
+    inventory = read_inventory(given.file, settings, mapping=given.mapping, sections=given.sections)
     progress(f"screening {len(inventory.fleet):,} joints")
     screening = screen(
         inventory,

@@ -9,8 +9,10 @@ import numpy as np
 from screener.limit_names import LIMIT_STATES
 from screener.mechanics import bolts as bolt
 from screener.mechanics import clamp, pipe_wall, polyethylene, ring
-from screener.mechanics.bolt_holes import bore_stress_factor
+from screener.mechanics.bolt_holes import bolt_hole_validity, bore_stress_factor, rotation_factor
 from screener.mechanics.ring_model_factor import hub_bed_arm_factor
+from screener.mechanics.section import SectionError, solve_section
+from screener.mechanics.section_plasticity import section_plastic_couple
 from screener.records import Fleet, Ledger, LimitStates, Severity
 from screener.standards.tables import read_table
 
@@ -27,6 +29,9 @@ SEASON = 0.25 * YEAR
 """Duration of the cooling that a cold season brings."""
 LONG_POISSON = 0.45
 """Poisson's ratio of PE under lasting load (PPI Handbook, from memory)."""
+NUT_WIDTH = 1.5
+"""Width of the band on which the nuts press over the bolt diameter (heavy hex nuts, ASME B18.2.2, from memory)."""
+STEEL_POISSON = 0.3
 EXPANSION = 1.44e-4
 """Thermal expansion of PE4XXX, 1/K (PPI Handbook, from memory; other texts 1.3e-4 to 2.0e-4)."""
 
@@ -58,8 +63,10 @@ class RingState:
     rating: np.ndarray
 
 
-def ring_state(fleet: Fleet, hub_modulus: np.ndarray, hole_factor: np.ndarray, safety_factor: float) -> RingState:
-    """Contact, first yield, collapse and rating of every ring for a hub modulus (Pa)."""
+def ring_state(
+    fleet: Fleet, hub_modulus: np.ndarray, hole_factor: np.ndarray, safety_factor: float, sections: dict[str, np.ndarray]
+) -> RingState:
+    """Contact, first yield, collapse and rating of every ring for a hub modulus (Pa); rings with a section polygon by its solution."""
     r = fleet.ring
     bore, outer = 0.5 * r.bore_diameter, 0.5 * r.outside_diameter
     contact = ring.hub_contact(
@@ -73,22 +80,40 @@ def ring_state(fleet: Fleet, hub_modulus: np.ndarray, hole_factor: np.ndarray, s
         hub_modulus,
         fleet.hub.thickness,
     )
-    arm = contact.lever_arm
-    first = ring.first_yield_bolt_load(r.yield_strength, arm, r.thickness, bore, outer, hole_factor)
-    plastic = ring.plastic_bolt_load(r.yield_strength, arm, r.thickness, bore, outer, r.hole_diameter)
-    rating = ring.loose_ring_rating(
-        r.yield_strength,
-        safety_factor,
-        hole_factor,
-        arm,
-        r.thickness,
-        bore,
-        outer,
-        fleet.face.pressure_diameter,
-        fleet.face.contact_area,
-        fleet.face.required_stress_factor,
-    )
+    arm = np.array(contact.lever_arm)
+    first = np.array(ring.first_yield_bolt_load(r.yield_strength, arm, r.thickness, bore, outer, hole_factor))
+    plastic = np.array(ring.plastic_bolt_load(r.yield_strength, arm, r.thickness, bore, outer, r.hole_diameter))
+    for i, solved in solved_sections(fleet, hub_modulus, sections):
+        arm[i] = solved.lever_arm
+        first[i] = r.yield_strength[i] / (hole_factor[i] * solved.peak_stress_per_load)
+        net = 1.0 - r.hole_diameter[i] / (r.outside_diameter[i] / 2 - r.bore_diameter[i] / 2)
+        plastic[i] = 2 * np.pi * r.yield_strength[i] * section_plastic_couple(sections[r.section[i]]) * net / solved.lever_arm
+    per_pressure = ring.app2_bolt_load(1.0, fleet.face.pressure_diameter, fleet.face.contact_area, fleet.face.required_stress_factor)
+    rating = first / safety_factor / per_pressure
     return RingState(arm, first, plastic, rating)
+
+
+def has_section(fleet: Fleet, sections: dict[str, np.ndarray]) -> np.ndarray:
+    """Mask of rings whose section polygon is known."""
+    return np.isin(fleet.ring.section, list(sections)) if sections else np.zeros(len(fleet), dtype=bool)
+
+
+def solved_sections(fleet: Fleet, hub_modulus: np.ndarray, sections: dict[str, np.ndarray]):
+    """(joint, solution) for rings with a section; equal rings on equal hubs are solved once. Hub modulus to 1 %."""
+    kept: dict = {}
+    r = fleet.ring
+    for i in np.flatnonzero(has_section(fleet, sections)):
+        reach = min(fleet.hub.outside_diameter[i], r.outside_diameter[i]) / 2
+        stiffness = float(np.exp(np.round(np.log(hub_modulus[i]), 2)))
+        numbers = (r.bore_diameter[i] / 2, reach, r.bolt_circle_diameter[i] / 2, NUT_WIDTH * fleet.bolts.diameter[i], r.modulus[i], STEEL_POISSON, stiffness, fleet.hub.thickness[i])
+        key = (r.section[i], *(round(v, 6) for v in numbers))
+        if key not in kept:
+            try:
+                kept[key] = solve_section(sections[r.section[i]], *numbers)
+            except SectionError as problem:
+                kept[key] = problem
+        if not isinstance(kept[key], SectionError):
+            yield i, kept[key]
 
 
 @dataclass(frozen=True, eq=False)
@@ -183,14 +208,16 @@ def arm_under_pull(fleet: Fleet, pressure: np.ndarray, bolt_load: np.ndarray) ->
     return hub_bed_arm_factor(share).mean / bolt_up
 
 
-def assess_limits(fleet: Fleet, safety_factor: float, ledger: Ledger) -> LimitStates:
+def assess_limits(fleet: Fleet, safety_factor: float, ledger: Ledger, sections: dict[str, np.ndarray] | None = None) -> LimitStates:
     """Utilization of every limit state of every joint, and the results behind them."""
     r, b, face, loads, pipe = fleet.ring, fleet.bolts, fleet.face, fleet.loads, fleet.pipe
     bore, outer = 0.5 * r.bore_diameter, 0.5 * r.outside_diameter
-    hole_factor = bore_stress_factor(r.hole_diameter, b.count, 0.5 * r.bolt_circle_diameter, bore, outer, r.thickness)
-    short = ring_state(fleet, modulus(pipe.family, SHORT_TERM, pipe.temperature), hole_factor, safety_factor)
-    aged = ring_state(fleet, modulus(pipe.family, LONG_TERM, pipe.temperature), hole_factor, safety_factor)
-    rating, aged_rating = ratings(fleet, short, aged, safety_factor, ledger)
+    sections = sections or {}
+    holes = (r.hole_diameter, b.count, 0.5 * r.bolt_circle_diameter, bore, outer, r.thickness)
+    hole_factor = bore_stress_factor(*holes)
+    short = ring_state(fleet, modulus(pipe.family, SHORT_TERM, pipe.temperature), hole_factor, safety_factor, sections)
+    aged = ring_state(fleet, modulus(pipe.family, LONG_TERM, pipe.temperature), hole_factor, safety_factor, sections)
+    rating, aged_rating = ratings(fleet, short, aged, safety_factor, ledger, sections)
     clamped = clamp_state(fleet, short)
 
     operating = loads.operating_pressure
@@ -215,7 +242,7 @@ def assess_limits(fleet: Fleet, safety_factor: float, ledger: Ledger) -> LimitSt
         return (needed + unloaded) / clamped.force_now
 
     pulled = arm_under_pull(fleet, recurrent, design_load(recurrent))
-    stress = ring.loose_ring_stress(design_load(recurrent), short.lever_arm, r.thickness, bore, outer) * hole_factor
+    stress = design_load(recurrent) / short.first_yield_load * r.yield_strength
     utilization = {
         "ring_rating": recurrent / rating,
         "ring_yield": bolt_force * arm_under_pull(fleet, occasional, bolt_force) / short.first_yield_load,
@@ -228,13 +255,21 @@ def assess_limits(fleet: Fleet, safety_factor: float, ledger: Ledger) -> LimitSt
         "pipe_recurrent": recurrent / (pipe_wall.RECURRENT_ALLOWANCE * pipe_rating),
         "pipe_occasional": occasional / (pipe_wall.OCCASIONAL_ALLOWANCE * pipe_rating),
     }
-    by_rating = uses_stated_rating(fleet)
+    by_rating = uses_stated_rating(fleet, sections)
     for name in ("ring_yield", "ring_collapse"):
         utilization[name] = np.where(by_rating, np.nan, utilization[name])
     matrix = np.column_stack([utilization[name] for name in LIMIT_STATES]) if len(fleet) else np.empty((0, len(LIMIT_STATES)))
     unknown = np.isnan(matrix)
     governing = np.where(unknown, -1.0, matrix).argmax(axis=1) if len(fleet) else np.empty(0, dtype=int)
     _note_ring_reasons(fleet, ledger)
+    ledger.finding(
+        "bolt_holes_outside_study",
+        Severity.DOUBTS,
+        fleet.position[~bolt_hole_validity(*holes) & np.isfinite(hole_factor)],
+        attribute="hole_diameter",
+        problem="holes, spacing or thickness lie outside the finite-element study of bolt holes",
+        action="its formula used all the same, less certain",
+    )
     _note_unknown(fleet, matrix, by_rating, ledger)
     opening = operating * clamp.opening_separating_load(clamped.force_now, clamped.load_factor) / separating_load(fleet, operating)
     details = {
@@ -247,7 +282,8 @@ def assess_limits(fleet: Fleet, safety_factor: float, ledger: Ledger) -> LimitSt
         "ring_safety_factor": safety_factor * rating / recurrent,
         "ring_stress": np.where(by_rating, np.nan, stress),
         "lever_arm": short.lever_arm,
-        "ring_rotation": ring.ring_rotation(design_load(recurrent), short.lever_arm, r.thickness, bore, outer, r.modulus),
+        "ring_rotation": rotation_factor(*holes)
+        * ring.ring_rotation(design_load(recurrent), short.lever_arm, r.thickness, bore, outer, r.modulus),
         "bore_stress_factor": hole_factor,
         "clamp_force": clamped.force_now,
         "assembly_clamp_force": clamped.assembly_force,
@@ -261,18 +297,27 @@ def assess_limits(fleet: Fleet, safety_factor: float, ledger: Ledger) -> LimitSt
     return LimitStates(matrix, governing, tuple(LIMIT_STATES), details)
 
 
-def uses_stated_rating(fleet: Fleet) -> np.ndarray:
+def uses_stated_rating(fleet: Fleet, sections: dict[str, np.ndarray]) -> np.ndarray:
     """Rings that are not flat plates and whose paper states a rating for loose use."""
     r = fleet.ring
-    return (r.form != "flat plate") & r.rating_is_for_loose_ring & np.isfinite(r.stated_rating)
+    return (r.form != "flat plate") & r.rating_is_for_loose_ring & np.isfinite(r.stated_rating) & ~has_section(fleet, sections)
 
 
-def ratings(fleet: Fleet, short: RingState, aged: RingState, safety_factor: float, ledger: Ledger):
+def ratings(fleet: Fleet, short: RingState, aged: RingState, safety_factor: float, ledger: Ledger, sections: dict[str, np.ndarray]):
     """(rating, rating with the aged hub), Pa: by mechanics for flat rings, by N = P_r N_r / P where only a rating is known."""
     r = fleet.ring
-    by_rating = uses_stated_rating(fleet)
+    by_rating = uses_stated_rating(fleet, sections)
     proportional = ring.stated_rating_pressure(r.stated_rating, r.stated_safety_factor, safety_factor)
-    shaped = (r.form != "flat plate") & ~by_rating
+    shaped = (r.form != "flat plate") & ~by_rating & ~has_section(fleet, sections)
+    named = np.array([isinstance(name, str) for name in r.section], dtype=bool)
+    ledger.finding(
+        "section_missing",
+        Severity.DOUBTS,
+        fleet.position[named & ~has_section(fleet, sections)],
+        attribute="ring_section",
+        problem="the ring's section is named and not in the table of ring sections",
+        action="estimated without it",
+    )
     ledger.finding(
         "shape_unknown",
         Severity.DOUBTS,

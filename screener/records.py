@@ -261,6 +261,7 @@ class Ring(_Columns):
     yield_strength: np.ndarray
     modulus: np.ndarray
     form: np.ndarray  # "flat plate", "contoured", "unknown"
+    section: np.ndarray  # name of its section polygon, None where it has none
     standard: np.ndarray
     ring_class: np.ndarray
     stated_rating: np.ndarray  # Pa, on the paper of the ring or of its class

@@ -46,6 +46,7 @@ def build_fleet(gaps: Gaps, joint_id: np.ndarray, rows: np.ndarray, assessment_y
             yield_strength=take("ring_yield_strength"),
             modulus=take("ring_modulus"),
             form=take("ring_form"),
+            section=take("ring_section"),
             standard=take("ring_standard"),
             ring_class=take("ring_class"),
             stated_rating=take("stated_rating"),

@@ -14,6 +14,7 @@ from screener.inventory.mapping_file import read_mapping
 from screener.inventory.match_headers import HeaderMatch, match_headers
 from screener.inventory.open_file import open_table
 from screener.inventory.parse_cells import parse_cells, written
+from screener.inventory.ring_sections import find_sections
 from screener.records import Fleet, Ledger, RawTable, Severity
 from screener.settings import Settings
 
@@ -34,6 +35,7 @@ class Inventory:
     fleet: Fleet
     ledger: Ledger
     settings: Settings
+    sections: dict[str, np.ndarray]
 
     def __len__(self) -> int:
         return len(self.raw)
@@ -71,6 +73,7 @@ def read_inventory(
     settings: Settings | None = None,
     *,
     mapping: str | Path | None = None,
+    sections: str | Path | None = None,
 ) -> Inventory:
     """Read, audit and fill an inventory. Raises InputError when the file can't be used at all."""
     settings = settings or Settings()
@@ -100,8 +103,9 @@ def read_inventory(
     fill_gaps(gaps, settings, column_of, parsed.as_written, blocked)
     reason = _first_reason(blocked, len(raw))
     rows = np.flatnonzero(reason == "")
+    polygons = find_sections(path, sections, ledger)
     fleet = build_fleet(gaps, joint_id, rows, settings.assessment_year)
-    return Inventory(raw, match, joint_id, reason, gaps, fleet, ledger, settings)
+    return Inventory(raw, match, joint_id, reason, gaps, fleet, ledger, settings, polygons)
 
 
 def fill_gaps(gaps: Gaps, settings: Settings, column_of, as_written, blocked: dict[str, np.ndarray]) -> None:

@@ -14,7 +14,7 @@ import numpy as np
 
 from screener import limits
 from screener.mechanics import bolts as bolt
-from screener.mechanics import clamp, pipe_wall, ring
+from screener.mechanics import pipe_wall, ring
 from screener.mechanics.bolt_holes import bore_stress_factor
 from screener.records import Fleet
 from screener.units import to_unit
@@ -67,7 +67,8 @@ def n(value: float) -> str:
 class Calculation:
     """Builds the steps of joint `i` of a fleet."""
 
-    def __init__(self, fleet: Fleet, i: int, safety_factor: float, system: str) -> None:
+    def __init__(self, fleet: Fleet, i: int, safety_factor: float, system: str, sections: dict) -> None:
+        self.sections = sections
         self.fleet = fleet.take(np.array([i]))
         self.factor = safety_factor
         self.u = US if system == "us" else METRIC
@@ -85,11 +86,13 @@ class Calculation:
             self.r.hole_diameter, self.b.count, self.r.bolt_circle_diameter / 2, self.r.bore_diameter / 2, self.r.outside_diameter / 2, self.r.thickness
         )
         self.short_modulus = limits.modulus(self.pipe.family, limits.SHORT_TERM, self.pipe.temperature)
-        self.state = limits.ring_state(fleet, self.short_modulus, self.hole, self.factor)
+        self.state = limits.ring_state(fleet, self.short_modulus, self.hole, self.factor, self.sections)
         self.clamped = limits.clamp_state(fleet, self.state)
         self._face(u)
-        if limits.uses_stated_rating(fleet)[0]:
+        if limits.uses_stated_rating(fleet, self.sections)[0]:
             self._stated(u)
+        elif solved := dict(limits.solved_sections(fleet, self.short_modulus, self.sections)):
+            self._section(u, solved[0])
         else:
             self._ring(u)
         self._clamp(u)
@@ -123,6 +126,15 @@ class Calculation:
         r = self.r
         rating = ring.stated_rating_pressure(r.stated_rating[0], r.stated_safety_factor[0], self.factor)
         self.add("Rating at the safety factor chosen", "P<sub>N</sub>", "P<sub>r</sub> N<sub>r</sub> / N", f"{n(u.p(r.stated_rating[0]))} * {n(r.stated_safety_factor[0])} / {n(self.factor)}", u.p(rating), u.stress, "proportional rule; common practice, no source", "The ring is not a flat plate; its stated rating is taken to be for loose use.")
+
+    def _section(self, u: Units, solved) -> None:
+        self.chapter = "Ring by its section"
+        r = self.r
+        f = float(self.hole[0])
+        per_load = solved.peak_stress_per_load * self.length_si**2
+        stress = self.add("Peak stress of the section", "S", "f W (S/W)", f"{n(f)} * {n(self.design_load)} * {n(per_load)}", f * self.design_load * per_load, u.stress, "axisymmetric finite elements of the section on the elastic hub; f for the bolt holes", f"S/W = {per_load:.5g} per {u.length}² and lever arm {u.l(solved.lever_arm):.4g} {u.length} come from the solution of section {r.section[0]!s}; they can't be redone by hand.")
+        p = u.p(self.fleet.loads.operating_pressure[0] + self.fleet.loads.recurrent_surge[0])
+        self.add("Loose-ring rating", "P<sub>N</sub>", "P (σ<sub>y</sub>/N) / S", f"{n(p)} * ({n(u.p(r.yield_strength[0]))} / {n(self.factor)}) / {n(stress)}", u.p(self.state.rating[0]), u.stress, "the stress is proportional to pressure")
 
     def _ring(self, u: Units) -> None:
         self.chapter = "Ring on the hub"
@@ -166,8 +178,6 @@ class Calculation:
         y = ring.taylor_forge_y(big_k)
         self.add("Ring factor", "Y", "[0.66845 + 5.71690 K² log<sub>10</sub>K / (K² − 1)] / (K − 1), K = b/a", f"(0.66845 + 5.71690 * {n(big_k)}**2 * log10({n(big_k)}) / ({n(big_k)}**2 - 1)) / ({n(big_k)} - 1)", y, "", APP2)
         f = float(self.hole[0])
-        stress = u.p(ring.loose_ring_stress(1.0, self.state.lever_arm[0], r.thickness[0], r.bore_diameter[0] / 2, r.outside_diameter[0] / 2)) * f
-        del stress
         s = f * y * self.design_load * arm / (t**2 * 2 * a)
         self.add("Stress at the bore corner", "S", "f Y W e / (t² 2a)", f"{n(f)} * {n(y)} * {n(self.design_load)} * {n(arm)} / ({n(t)}**2 * 2 * {n(a)})", s, u.stress, APP2 + "; f for the bolt holes from three-dimensional finite elements")
         sigma = u.p(r.yield_strength[0])
@@ -263,9 +273,6 @@ class Calculation:
         self.add("Pipe utilization, operating", "U", "P<sub>op</sub> / PR", f"{n(operating)} / {n(pr)}", operating / pr, "", "AWWA M55")
 
 
-def calculation_steps(fleet: Fleet, i: int, safety_factor: float, system: str) -> list[Step]:
-    """The steps of joint i; `clamp` and `limits` hold the formulas themselves."""
-    return Calculation(fleet, i, safety_factor, system).build()
-
-
-__all__ = ["Calculation", "Step", "calculation_steps", "clamp"]
+def calculation_steps(fleet: Fleet, i: int, safety_factor: float, system: str, sections: dict | None = None) -> list[Step]:
+    """The steps of joint i; the formulas themselves are those of `limits` and the mechanics."""
+    return Calculation(fleet, i, safety_factor, system, sections or {}).build()

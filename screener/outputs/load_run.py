@@ -14,6 +14,7 @@ import pyarrow.parquet
 from screener.columns import inventory_attributes
 from screener.inventory.build_fleet import build_fleet
 from screener.inventory.gaps import Gaps
+from screener.inventory.ring_sections import read_sections
 from screener.outputs.run_folder import read_run
 from screener.pressure.step import with_surge_by_formula
 from screener.records import Fleet, Ledger, ModelError
@@ -32,6 +33,7 @@ class LoadedJoints:
     assumptions: pd.DataFrame
     findings: pd.DataFrame
     fleet: Fleet
+    sections: dict[str, np.ndarray]
 
 
 def load_joints(folder: str | Path, joints: list[str]) -> LoadedJoints:
@@ -56,7 +58,9 @@ def load_joints(folder: str | Path, joints: list[str]) -> LoadedJoints:
             raise ModelError(f"{folder}: joint {joint!r} is not ranked: {row['reason']}")
     assumptions = pyarrow.parquet.read_table(folder / "assumptions.parquet", filters=[("row", "in", numbers)]).to_pandas()
     findings = pd.read_csv(folder / "findings.csv", dtype=str, keep_default_na=False)
-    return LoadedJoints(folder, record, settings, values, ranking, assumptions, findings, fleet_of(values, joints, record, settings))
+    sections = read_sections(folder / "ring_sections.csv", Ledger()) if "sections" in record["files"] else {}
+    fleet = fleet_of(values, joints, record, settings)
+    return LoadedJoints(folder, record, settings, values, ranking, assumptions, findings, fleet, sections)
 
 
 def _lines(path: Path, numbers: list[int]) -> pd.DataFrame:

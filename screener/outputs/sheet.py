@@ -105,7 +105,7 @@ def sheet_html(loaded: LoadedJoints, i: int) -> str:
         f'<p class="verdict">Rank {int(row["rank"]):,} of {total:,}. Utilization {row["utilization"]:.2f}, governed by {E(state.label)}.</p>',
         f"<p>{E(verdict(loaded, i))}</p>",
         "<h2>Section, to scale</h2>",
-        _drawing(loaded.fleet, i, system),
+        _drawing(loaded, i, system),
         "<h2>Limit states</h2>",
         _limit_table(row),
         "<h2>Calculation</h2><p>Each line can be redone by hand: formula, numbers, result, source. "
@@ -138,12 +138,13 @@ def verdict(loaded: LoadedJoints, i: int) -> str:
     return text + f" Of it {row['retained_share']:.0%} is left after creep."
 
 
-def _drawing(fleet: Fleet, i: int, system: str) -> str:
+def _drawing(loaded: LoadedJoints, i: int, system: str) -> str:
+    fleet = loaded.fleet
     one = fleet.take(np.array([i]))
     r = one.ring
     hole = bore_stress_factor(r.hole_diameter, one.bolts.count, r.bolt_circle_diameter / 2, r.bore_diameter / 2, r.outside_diameter / 2, r.thickness)
     modulus = limits.modulus(one.pipe.family, limits.SHORT_TERM, one.pipe.temperature)
-    state = limits.ring_state(one, modulus, hole, 1.0)
+    state = limits.ring_state(one, modulus, hole, 1.0, loaded.sections)
     contact = limits.ring.hub_contact(
         r.bore_diameter / 2,
         np.minimum(one.hub.outside_diameter / 2, r.outside_diameter / 2),
@@ -190,7 +191,7 @@ def result(value: float) -> str:
 
 def _steps(loaded: LoadedJoints, i: int, system: str) -> str:
     made, chapter = [], ""
-    for step in calculation_steps(loaded.fleet, i, loaded.settings.safety_factor, system):
+    for step in calculation_steps(loaded.fleet, i, loaded.settings.safety_factor, system, loaded.sections):
         if step.chapter != chapter:
             chapter = step.chapter
             made.append(f"<h3>{E(chapter)}</h3>")
@@ -207,7 +208,7 @@ def _changes(loaded: LoadedJoints, i: int) -> str:
     one = loaded.fleet.take(np.array([i]))
     r, b, loads = one.ring, one.bolts, one.loads
     factor = loaded.settings.safety_factor
-    now = _utilization(one, factor)
+    now = _utilization(one, factor, loaded.sections)
     unit = "in" if loaded.settings.units == "us" else "mm"
     variants = [
         (f"ring half as thick again ({number(1.5 * r.thickness[0], unit, 2 if unit == 'in' else 0)})", replace(one, ring=replace(r, thickness=1.5 * r.thickness))),
@@ -220,13 +221,13 @@ def _changes(loaded: LoadedJoints, i: int) -> str:
     ]
     lines = [f"<tr><td>as it is</td><td class='n'>{now[0]:.2f}</td><td>{E(now[1])}</td></tr>"]
     for words, fleet in variants:
-        value, label = _utilization(fleet, factor)
+        value, label = _utilization(fleet, factor, loaded.sections)
         lines.append(f"<tr><td>{E(words)}</td><td class='n'>{value:.2f}</td><td>{E(label)}</td></tr>")
     return f"<table><tr><th>If</th><th>Utilization</th><th>Governed by</th></tr>{''.join(lines)}</table>"
 
 
-def _utilization(fleet: Fleet, factor: float) -> tuple[float, str]:
-    found = limits.assess_limits(fleet, factor, Ledger())
+def _utilization(fleet: Fleet, factor: float, sections: dict) -> tuple[float, str]:
+    found = limits.assess_limits(fleet, factor, Ledger(), sections)
     k = int(found.governing[0])
     return float(found.utilization[0, k]), LIMIT_STATES[found.names[k]].label
 

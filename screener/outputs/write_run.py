@@ -50,6 +50,9 @@ def write_run(
     paths["values"] = folder / "joints.parquet"
     with whole_file(paths["values"]) as temporary:
         run_values(screening).to_parquet(temporary, index=False)
+    if screening.inventory.sections:
+        paths["sections"] = folder / "ring_sections.csv"
+        write_csv(section_frame(screening.inventory.sections), paths["sections"])
     if len(screening.table) <= LAYER_ROWS:
         progress("writing joints.gpkg")
         paths["layer"] = folder / "joints.gpkg"
@@ -100,6 +103,12 @@ def run_values(screening: Screening) -> pd.DataFrame:
         if name in screening.inventory.match.columns:
             parts[f"{name}__written"] = screening.inventory.as_written(name)
     return pd.DataFrame({name: as_series(values) for name, values in parts.items()})
+
+
+def section_frame(sections: dict[str, np.ndarray]) -> pd.DataFrame:
+    """Ring sections as the table they are read from."""
+    parts = [pd.DataFrame({"section": name, "r_mm": 1000 * c[:, 0], "z_mm": 1000 * c[:, 1]}) for name, c in sections.items()]
+    return pd.concat(parts, ignore_index=True)
 
 
 def guard_formulas(frame: pd.DataFrame) -> pd.DataFrame:
