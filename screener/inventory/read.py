@@ -80,7 +80,13 @@ def read_inventory(
     ledger = Ledger()
     raw = open_table(path, sheet=settings.sheet or None, ledger=ledger)
     given = read_mapping(mapping) if mapping is not None else None
-    match = match_headers(raw, given, ledger)
+    polygons = find_sections(path, sections, ledger)
+    return understand(raw, settings, ledger, mapping=given, sections=polygons)
+
+
+def understand(raw: RawTable, settings: Settings, ledger: Ledger, *, mapping: dict | None, sections: dict) -> Inventory:
+    """Match, parse, audit and fill a table, and build its Fleet."""
+    match = match_headers(raw, mapping, ledger)
     parsed = parse_cells(raw, match, ledger)
     gaps = Gaps(parsed.values, parsed.origin, len(raw), ledger)
     column_of = {attribute: raw.headings[k] for attribute, k in parsed.columns.items()}
@@ -103,9 +109,8 @@ def read_inventory(
     fill_gaps(gaps, settings, column_of, parsed.as_written, blocked)
     reason = _first_reason(blocked, len(raw))
     rows = np.flatnonzero(reason == "")
-    polygons = find_sections(path, sections, ledger)
     fleet = build_fleet(gaps, joint_id, rows, settings.assessment_year)
-    return Inventory(raw, match, joint_id, reason, gaps, fleet, ledger, settings, polygons)
+    return Inventory(raw, match, joint_id, reason, gaps, fleet, ledger, settings, sections)
 
 
 def fill_gaps(gaps: Gaps, settings: Settings, column_of, as_written, blocked: dict[str, np.ndarray]) -> None:

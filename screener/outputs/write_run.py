@@ -61,6 +61,10 @@ def write_run(
         progress("writing joints_layer.parquet")
         paths["layer"] = folder / "joints_layer.parquet"
         write_geoparquet(screening, paths["layer"])
+    from screener.outputs.capacity_plot import write_capacity_plot
+
+    if write_capacity_plot(screening, folder / "ring_capacity.png"):
+        paths["capacity_picture"] = folder / "ring_capacity.png"
     if workbook and len(screening.table) <= WORKBOOK_ROWS:
         from screener.outputs.workbook import write_workbook
 
