@@ -63,4 +63,19 @@ LIMIT_STATES = {
         "Operating pressure plus occasional surge over 2.0 times the rating.",
         "AWWA M55.",
     ),
+    "ring_fatigue": LimitState(
+        "ring fatigue",
+        "Miner's sum at the edge of a bolt hole under the usual pressure cycle, from installation to the end of the horizon.",
+        "EN 1993-1-9 (category from memory); DNV-RP-C203 in free corrosion (read in open-source code); peak stress by finite elements.",
+    ),
+    "bolt_fatigue": LimitState(
+        "bolt fatigue",
+        "Miner's sum of the bolts under the usual pressure cycle, from installation to the end of the horizon.",
+        "EN 1993-1-9, bolts in tension (category from memory).",
+    ),
+    "pipe_fatigue": LimitState(
+        "pipe fatigue",
+        "Range of the usual pressure cycle over the pipe's rating re-rated for the number of cycles in 100 years.",
+        "Published guideline factors for PE80 and PE100 (from memory, not confirmed); newer PE is rarely governed by fatigue.",
+    ),
 }

@@ -267,6 +267,8 @@ class Ring(_Columns):
     stated_rating: np.ndarray  # Pa, on the paper of the ring or of its class
     stated_safety_factor: np.ndarray
     rating_is_for_loose_ring: np.ndarray  # bool
+    coating: np.ndarray
+    environment: np.ndarray  # what surrounds ring and bolts
 
 
 @dataclass(frozen=True, eq=False)

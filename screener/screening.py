@@ -98,7 +98,7 @@ def screen(
         occasional_velocity_change=settings.occasional_velocity_change,
     )
     progress(f"limit states of {len(fleet):,} joints")
-    limits = assess_limits(fleet, settings.safety_factor, inventory.ledger, inventory.sections)
+    limits = assess_limits(fleet, settings.safety_factor, inventory.ledger, inventory.sections, settings.horizon_years)
     progress("ranking")
     table = result_table(inventory, fleet, limits)
     rows = inventory.raw.row_numbers

@@ -52,6 +52,8 @@ def build_fleet(gaps: Gaps, joint_id: np.ndarray, rows: np.ndarray, assessment_y
             stated_rating=take("stated_rating"),
             stated_safety_factor=take("stated_safety_factor"),
             rating_is_for_loose_ring=take("rating_basis") == "loose",
+            coating=take("ring_coating"),
+            environment=take("environment_class"),
         ),
         bolts=Bolts(
             count=take("bolt_count"),

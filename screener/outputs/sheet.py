@@ -208,7 +208,7 @@ def _changes(loaded: LoadedJoints, i: int) -> str:
     one = loaded.fleet.take(np.array([i]))
     r, b, loads = one.ring, one.bolts, one.loads
     factor = loaded.settings.safety_factor
-    now = _utilization(one, factor, loaded.sections)
+    now = _utilization(one, factor, loaded.sections, loaded.settings.horizon_years)
     unit = "in" if loaded.settings.units == "us" else "mm"
     variants = [
         (f"ring half as thick again ({number(1.5 * r.thickness[0], unit, 2 if unit == 'in' else 0)})", replace(one, ring=replace(r, thickness=1.5 * r.thickness))),
@@ -221,13 +221,13 @@ def _changes(loaded: LoadedJoints, i: int) -> str:
     ]
     lines = [f"<tr><td>as it is</td><td class='n'>{now[0]:.2f}</td><td>{E(now[1])}</td></tr>"]
     for words, fleet in variants:
-        value, label = _utilization(fleet, factor, loaded.sections)
+        value, label = _utilization(fleet, factor, loaded.sections, loaded.settings.horizon_years)
         lines.append(f"<tr><td>{E(words)}</td><td class='n'>{value:.2f}</td><td>{E(label)}</td></tr>")
     return f"<table><tr><th>If</th><th>Utilization</th><th>Governed by</th></tr>{''.join(lines)}</table>"
 
 
-def _utilization(fleet: Fleet, factor: float, sections: dict) -> tuple[float, str]:
-    found = limits.assess_limits(fleet, factor, Ledger(), sections)
+def _utilization(fleet: Fleet, factor: float, sections: dict, horizon: float) -> tuple[float, str]:
+    found = limits.assess_limits(fleet, factor, Ledger(), sections, horizon)
     k = int(found.governing[0])
     return float(found.utilization[0, k]), LIMIT_STATES[found.names[k]].label
 
