@@ -2,21 +2,21 @@
 
 from __future__ import annotations
 
-import difflib
-import re
-from dataclasses import dataclass, field
-from functools import cache
+from collections import Counter
+from dataclasses import dataclass, field, replace
 
-import pandas as pd
+import numpy as np
 
 from screener.columns import Attribute, inventory_attributes
-from screener.inventory.header_rows import normal, sorted_words
+from screener.inventory.header_rows import column_letters
+from screener.inventory.match_values import agreement, by_values, names_apart, share_of_pipe_diameters
+from screener.inventory.match_wording import GEOMETRY, Meaning, meanings, unit_in_heading
 from screener.records import InputError, Ledger, RawTable, Severity
-from screener.units import UNITS, find_unit
+from screener.units import UNITS
 
-CLOSE_ENOUGH = 0.86
-# Words that alone say too little: used only when the values agree.
-WEAK = frozenset({"od", "id", "class", "material", "notes", "rating", "year", "size", "pressure", "bolts", "bolt", "thickness", "line", "area", "x", "y", "z", "level", "profile", "surge", "cycles", "position", "finish", "route", "main"})
+SURE = 0.65  # a heading below it is trusted only with its values
+LEAST_AGREEMENT, LEAST_WHEN_UNSURE = 0.3, 0.6
+TIE = 0.85
 
 
 @dataclass(frozen=True)
@@ -42,158 +42,146 @@ class HeaderMatch:
     def lines(self) -> list[str]:
         """One line per column for people."""
         labels = inventory_attributes()
-        made = []
-        for k, heading in enumerate(self.headings):
-            if k in self.matched:
-                found = self.matched[k]
-                made.append(f"{heading!r} is {labels[found.attribute].label} ({found.reason})")
-            else:
-                made.append(f"{heading!r} is not used")
-        return made
+        return [
+            f"{heading!r} is {labels[self.matched[k].attribute].label} ({self.matched[k].reason})" if k in self.matched else f"{heading!r} is not used"
+            for k, heading in enumerate(self.headings)
+        ]
 
 
-def unit_in_heading(heading: str, attribute: Attribute) -> str:
-    """The unit a heading names, in brackets or as its last words; "" when none."""
-    if not attribute.dimension:
-        return ""
-    for piece in re.findall(r"[(\[{]([^)\]}]*)[)\]}]", heading):
-        for word in (piece, *piece.replace(";", ",").split(",")):
-            unit = find_unit(word.strip(), attribute.dimension)
-            if unit:
-                return unit
-    words = re.sub(r"[(\[{].*?[)\]}]", " ", heading).replace("_", " ").replace("/", " ").split()
-    for count in (2, 1):
-        if len(words) > count:
-            tail = " ".join(words[-count:])
-            unit = find_unit(tail, attribute.dimension)
-            if unit and not (count == 1 and len(tail) == 1 and attribute.dimension in ("pressure", "stress")):
-                return unit
-    return ""
-
-
-def _without_unit(heading: str, attribute: Attribute) -> str:
-    """The normalized heading without a unit at its end."""
-    words = normal(heading.replace("_", " ")).split()
-    for count in (2, 1):
-        if len(words) > count and find_unit(" ".join(words[-count:]), attribute.dimension):
-            return " ".join(words[:-count])
-    return " ".join(words)
-
-
-@cache
-def _vocabulary() -> dict[str, tuple[str, str]]:
-    """Normalized wording -> (attribute, what it is)."""
-    words: dict[str, tuple[str, str]] = {}
-    for name, attribute in inventory_attributes().items():
-        for text in attribute.synonyms:
-            words.setdefault(normal(text), (name, f"synonym {text!r}"))
-    for name, attribute in inventory_attributes().items():
-        words[normal(attribute.label)] = (name, "its label")
-        words[normal(attribute.machine_name.replace("_", " "))] = (name, "its machine name")
-        words[normal(name.replace("_", " "))] = (name, "its name")
-    for wording, meaning in list(words.items()):
-        words.setdefault(sorted_words(wording), meaning)
-    return words
-
-
-def _candidates(heading: str) -> list[Matched]:
-    """Possible meanings of a heading, strongest first."""
-    vocabulary = _vocabulary()
-    attributes = inventory_attributes()
-    plain = normal(heading.replace("_", " "))
-    found = []
-    tried = {plain}
-    for attribute in attributes.values():
-        tried.add(_without_unit(heading, attribute))
-    for wording in tried:
-        for variant in dict.fromkeys((wording, sorted_words(wording), wording.rstrip("s"), re.sub(r"\b(no|number|nr)\b", "", wording).strip())):
-            if variant in vocabulary:
-                name, what = vocabulary[variant]
-                attribute = attributes[name]
-                unit = unit_in_heading(heading, attribute)
-                if wording != plain and not unit:
-                    continue
-                strength = 1.0 if variant == wording else 0.95
-                if variant in WEAK:
-                    strength = 0.6
-                if unit:
-                    strength += 0.05
-                reason = what + (f", unit {unit} in the heading" if unit else "")
-                found.append(Matched(heading, name, unit, reason, strength))
-    if not found:
-        # A merged heading above may have been joined on: the words below it speak for themselves.
-        words = heading.split()
-        for start in range(1, len(words)):
-            tail = " ".join(words[start:])
-            if normal(tail.replace("_", " ")) in vocabulary or _without_unit(tail, attributes["operating_pressure"]) in vocabulary:
-                below = _candidates(tail)
-                return [Matched(heading, m.attribute, m.unit, f"{m.reason}, under {' '.join(words[:start])!r}", 0.9 * m.strength) for m in below]
-    if not found and len(plain) > 4:
-        close = difflib.get_close_matches(plain, vocabulary, n=1, cutoff=CLOSE_ENOUGH)
-        if close:
-            name, what = vocabulary[close[0]]
-            unit = unit_in_heading(heading, attributes[name])
-            likeness = difflib.SequenceMatcher(None, plain, close[0]).ratio()
-            found.append(Matched(heading, name, unit, f"close to {what} {close[0]!r}", 0.7 * likeness))
-    return sorted(found, key=lambda m: -m.strength)
-
-
-def _values_agree(values: pd.Series, attribute: Attribute) -> float:
-    """Share of a sample of the column's values that could belong to the attribute."""
-    from screener.inventory.parse_values import could_be
-
-    known = values[values.notna()]
-    if not len(known):
-        return 0.5
-    sample = known.iloc[:: max(1, len(known) // 60)].head(60)
-    return sum(could_be(value, attribute) for value in sample) / len(sample)
+def heading_keys(headings: tuple[str, ...]) -> list[str]:
+    """A name of its own for each column: its heading, with the column's letters where another column has the same."""
+    counts = Counter(headings)
+    return [heading if counts[heading] == 1 else f"{heading} (column {column_letters(k)})" for k, heading in enumerate(headings)]
 
 
 def match_headers(table: RawTable, mapping: dict | None, ledger: Ledger) -> HeaderMatch:
     """Match each heading to an attribute: by the mapping file where given, else by wording and values."""
-    attributes = inventory_attributes()
     columns: dict[str, int] = {}
     matched: dict[int, Matched] = {}
+    settled = _by_mapping(table, mapping, columns, matched, ledger) if mapping is not None else set()
+    rivals = _by_wording(table, settled, columns, matched)
+    _settle_diameters(table, settled, columns, matched, ledger)
+    _by_their_values(table, settled, columns, matched, ledger)
+    _note_rivals(table, rivals, columns, matched, ledger)
+    unused = tuple(k for k in range(len(table.headings)) if k not in matched)
+    _note_rest(table, unused, columns, ledger)
+    return HeaderMatch(table.headings, columns, matched, unused)
+
+
+def _by_mapping(table: RawTable, mapping: dict, columns: dict, matched: dict, ledger: Ledger) -> set[int]:
+    """Columns that the mapping file settles, those it leaves out included."""
     settled: set[int] = set()
-    if mapping is not None:
-        for k, heading in enumerate(table.headings):
-            entry = mapping.get(heading)
-            if entry is None:
-                continue
-            settled.add(k)
-            if entry["attribute"]:
-                if entry["attribute"] in columns:
-                    other = table.headings[columns[entry["attribute"]]]
-                    raise InputError(f"mapping: {heading!r} and {other!r} are both {entry['attribute']}; leave one of them \"\"")
-                columns[entry["attribute"]] = k
-                matched[k] = Matched(heading, entry["attribute"], entry["unit"], "mapping file", 2.0)
-        strange = [heading for heading in mapping if heading not in table.headings]
-        if strange:
-            ledger.finding("mapping_unused", Severity.NOTES, None, problem=f"the mapping names columns the file does not have: {', '.join(map(repr, strange[:5]))}", action="passed over")
+    keys = heading_keys(table.headings)
+    for k, heading in enumerate(table.headings):
+        key = keys[k] if keys[k] in mapping else heading
+        entry = mapping.get(key)
+        if entry is None:
+            continue
+        settled.add(k)
+        name = entry["attribute"]
+        if not name:
+            continue
+        if name in columns:
+            raise InputError(f'mapping: {keys[k]!r} and {keys[columns[name]]!r} are both {name}; leave one of them ""')
+        columns[name] = k
+        matched[k] = Matched(heading, name, entry["unit"], "mapping file", 2.0)
+    known = {*table.headings, *keys}
+    strange = [heading for heading in mapping if heading not in known]
+    if strange:
+        names = ", ".join(map(repr, strange[:5])) + (" …" if len(strange) > 5 else "")
+        ledger.finding("mapping_unused", Severity.NOTES, None, problem=f"the mapping names columns the file does not have: {names}", action="passed over")
+    return settled
+
+
+def _by_wording(table: RawTable, settled: set[int], columns: dict, matched: dict) -> dict[int, tuple[str, float]]:
+    """Give each attribute its best column; returns columns that lost theirs: index -> (attribute, share of the winner's score)."""
     options = []
     for k, heading in enumerate(table.headings):
-        if k in settled:
+        if k not in settled:
+            options += [(score, -k, k, meaning) for meaning in meanings(heading) if (score := _score(table, k, meaning)) is not None]
+    scores: dict[str, float] = {}
+    rivals: dict[int, tuple[str, float]] = {}
+    for score, _, k, meaning in sorted(options, key=lambda o: (o[0], o[1]), reverse=True):
+        if k in matched or (k in rivals and meaning.strength < SURE):
             continue
-        for candidate in _candidates(heading):
-            agreement = _values_agree(table.cells.iloc[:, k], attributes[candidate.attribute])
-            if agreement < 0.3 or (candidate.strength < 0.65 and agreement < 0.6):
-                continue
-            options.append((candidate.strength * (0.5 + 0.5 * agreement), -k, k, candidate))
-    rivals: dict[int, str] = {}
-    for _score, _order, k, candidate in sorted(options, key=lambda o: (o[0], o[1]), reverse=True):
-        if k in matched:
+        if meaning.attribute in columns:
+            rivals.setdefault(k, (meaning.attribute, score / scores.get(meaning.attribute, 2.0)))
             continue
-        if candidate.attribute in columns:
-            rivals.setdefault(k, candidate.attribute)
-            continue
-        columns[candidate.attribute] = k
-        matched[k] = candidate
+        columns[meaning.attribute], scores[meaning.attribute] = k, score
+        matched[k] = _matched(table, k, meaning)
         rivals.pop(k, None)
-    for k, attribute in sorted(rivals.items()):
-        if k not in matched:
-            taken = table.headings[columns[attribute]]
-            ledger.finding("two_columns", Severity.DOUBTS, None, attribute=attribute, column=table.headings[k], problem=f"{table.headings[k]!r} could be {attributes[attribute].label} too; {taken!r} is taken for it", action="column kept and not used; settle it in the mapping file")
-    unused = tuple(k for k in range(len(table.headings)) if k not in matched)
+    return rivals
+
+
+def _matched(table: RawTable, k: int, meaning: Meaning) -> Matched:
+    return Matched(table.headings[k], meaning.attribute, meaning.unit, meaning.reason, min(meaning.strength, 1.0))
+
+
+def _score(table: RawTable, k: int, meaning: Meaning) -> float | None:
+    """How well a column is what its heading says; None where its values speak against it."""
+    attribute, cells = inventory_attributes()[meaning.attribute], table.cells.iloc[:, k]
+    unsure = meaning.strength < SURE
+    share = agreement(cells, attribute, meaning.unit, ranged=unsure or meaning.implied)
+    if share < (LEAST_WHEN_UNSURE if unsure else LEAST_AGREEMENT):
+        return None
+    if unsure and attribute.name in ("joint_id", "ring_bore"):
+        apart = names_apart(cells)
+        if apart != (attribute.name == "joint_id") and "'id'" in meaning.reason:
+            return None
+        if attribute.name == "joint_id" and not apart:
+            return None
+    if unsure and attribute.name == "main_id" and any(isinstance(v, float) and not float(v).is_integer() for v in cells.dropna().head(200)):
+        return None  # a pipe's inside diameter
+    return meaning.strength * (0.5 + 0.5 * share) + 0.02 * float(cells.notna().mean())
+
+
+def _settle_diameters(table: RawTable, settled: set[int], columns: dict, matched: dict, ledger: Ledger) -> None:
+    """A heading "OD" alone is the pipe's or the ring's: look how far above the nominal size it lies."""
+    for name in ("pipe_outside_diameter", "ring_outside_diameter"):
+        k = columns.get(name)
+        if k is None or k in settled or "'od'" not in matched[k].reason or matched[k].strength >= SURE:
+            continue
+        other = "ring_outside_diameter" if name.startswith("pipe") else "pipe_outside_diameter"
+        size = columns.get("nominal_size")
+        share = float("nan") if size is None else share_of_pipe_diameters(table.cells.iloc[:, k], matched[k].unit, table.cells.iloc[:, size], matched[size].unit)
+        if np.isnan(share):
+            continue
+        is_pipe, clear = share >= 0.5, share <= 0.2 or share >= 0.8
+        if is_pipe == (name == "pipe_outside_diameter") and clear:
+            matched[k] = replace(matched[k], reason=f"{matched[k].reason}, and its values lie where a {'pipe' if is_pipe else 'ring'}'s do")
+            continue
+        del columns[name]
+        if clear and other not in columns:
+            columns[other] = k
+            matched[k] = replace(matched[k], attribute=other, reason=f"the word 'od', and its values lie where a {'pipe' if is_pipe else 'ring'}'s do")
+        else:
+            del matched[k]
+            ledger.finding("od_unclear", Severity.DOUBTS, None, attribute=name, column=table.headings[k], problem=f"{table.headings[k]!r} could be the pipe's or the ring's outside diameter", action="column kept and not used; settle it in the mapping file")
+
+
+def _by_their_values(table: RawTable, settled: set[int], columns: dict, matched: dict, ledger: Ledger) -> None:
+    """Columns whose values name what they are, such as "DR 11", under headings that say nothing."""
+    for k, heading in enumerate(table.headings):
+        if k in matched or k in settled or heading.strip().lower() in GEOMETRY or meanings(heading):
+            continue
+        name = by_values(table.cells.iloc[:, k])
+        if name and name not in columns:
+            columns[name] = k
+            matched[k] = Matched(heading, name, unit_in_heading(heading, inventory_attributes()[name]), "its values say so", 0.5)
+            ledger.finding("column_by_values", Severity.NOTES, None, attribute=name, column=heading, problem=f"the heading {heading!r} says nothing known, its values do", action=f"taken for {inventory_attributes()[name].label}; settle it in the mapping file if that is wrong")
+
+
+def _note_rivals(table: RawTable, rivals: dict, columns: dict, matched: dict, ledger: Ledger) -> None:
+    """Columns left out because another one is taken for the same attribute; a near tie is a doubt."""
+    for k, (name, share) in sorted(rivals.items()):
+        if k in matched or name not in columns:
+            continue
+        taken = table.headings[columns[name]]
+        severity = Severity.DOUBTS if share >= TIE else Severity.NOTES
+        ledger.finding("two_columns", severity, None, attribute=name, column=table.headings[k], problem=f"{table.headings[k]!r} could be {inventory_attributes()[name].label} too; {taken!r} is taken for it", action="column kept and not used; settle it in the mapping file")
+
+
+def _note_rest(table: RawTable, unused: tuple[int, ...], columns: dict, ledger: Ledger) -> None:
     if unused:
         names = ", ".join(repr(table.headings[k]) for k in unused[:12]) + (" …" if len(unused) > 12 else "")
         ledger.finding("columns_unused", Severity.NOTES, None, problem=f"{len(unused)} columns match no attribute: {names}", action="kept in the map layer, not used")
@@ -201,8 +189,8 @@ def match_headers(table: RawTable, mapping: dict | None, ledger: Ledger) -> Head
         raise InputError(f"{table.source}: no column is understood; headings are {', '.join(map(repr, table.headings[:8]))}. Write a mapping file (see 'joint-screener check')")
     if not ({"nominal_size", "pipe_outside_diameter"} & set(columns)):
         ledger.finding("no_size_column", Severity.BLOCKS, None, problem="no column gives the pipe's size", action="no joint can be ranked; name the column in a mapping file")
-    return HeaderMatch(table.headings, columns, matched, unused)
 
 
 def accepted_units(attribute: Attribute) -> list[str]:
+    """Units of an attribute's dimension, for messages."""
     return list(UNITS.get(attribute.dimension, {}))

@@ -16,8 +16,11 @@ from screener.inventory.parse_words import read_category
 from screener.units import from_unit, is_missing_word, read_quantity
 
 
-def could_be(value: object, attribute: Attribute, unit: str = "") -> bool:
-    """Whether one cell could belong to an attribute; unit: of bare numbers, where the heading names one."""
+def could_be(value: object, attribute: Attribute, unit: str = "", ranged: bool = False) -> bool:
+    """Whether one cell could belong to an attribute.
+
+    unit: of bare numbers, where the heading names one; ranged: a quantity must also be possible.
+    """
     kind = attribute.kind
     if isinstance(value, (bool, np.bool_)):
         return kind == "text" or (kind == "category" and read_category("yes" if value else "no", attribute, False)[0] is not None)
@@ -35,7 +38,7 @@ def could_be(value: object, attribute: Attribute, unit: str = "") -> bool:
         return _is_date(number, text)
     if kind == "category":
         return read_category(text, attribute)[0] is not None
-    return _is_number(number, text, attribute, unit)
+    return _is_number(number, text, attribute, unit, ranged)
 
 
 def _is_date(number: float | None, text: str) -> bool:
@@ -44,7 +47,7 @@ def _is_date(number: float | None, text: str) -> bool:
     return any(not math.isnan(read_date(part)[0]) for part in re.split(r"[;,|\n]", text))
 
 
-def _is_number(number: float | None, text: str, attribute: Attribute, unit: str) -> bool:
+def _is_number(number: float | None, text: str, attribute: Attribute, unit: str, ranged: bool) -> bool:
     own = ""
     if number is None:
         read = read_quantity(text, attribute.dimension)
@@ -58,5 +61,7 @@ def _is_number(number: float | None, text: str, attribute: Attribute, unit: str)
     low, high = attribute.possible
     if not attribute.dimension:
         return low <= number <= high
+    if not ranged:
+        return True
     units = [own or unit] if own or unit else CANDIDATES.get(attribute.dimension, ())
     return not units or any(low <= float(from_unit(number, u, attribute.dimension)) <= high for u in units)

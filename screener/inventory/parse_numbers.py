@@ -1,0 +1,183 @@
+"""Columns of quantities, numbers and counts."""
+
+from __future__ import annotations
+
+import datetime
+import re
+
+import numpy as np
+
+from screener.columns import Attribute
+from screener.inventory.bare_numbers import decide_units, slips
+from screener.inventory.parse_column import Column
+from screener.records import Origin, Severity
+from screener.units import accepted, from_unit, read_quantity, separators_in, show
+
+SI_UNITS = ("m", "Pa", "N m", "C", "K", "rad", "money")
+# "150#" on a ring's paper is the class 150 of its drilling; such a ring is not rated 150 psi by that name.
+CLASS_NAME = re.compile(r"(?:class|cl\.?)\s*\d+|\d+\s*(?:#|lbs?\.?)|#\s*\d+", re.I)
+CURRENCIES = {"$": "$", "usd": "$", "us$": "$", "€": "€", "eur": "€", "£": "£", "gbp": "£", "¥": "¥", "cad": "CAD", "aud": "AUD", "nzd": "NZD", "chf": "CHF", "a$": "AUD", "c$": "CAD"}
+CURRENCY = re.compile(r"[a-z]{0,2}[$€£¥]|\b(?:usd|eur|gbp|cad|aud|nzd|chf)\b", re.I)
+
+
+def decimal_comma_of(column: Column) -> bool | None:
+    """Whether the column writes decimals with commas, decided from all its cells; open cases are findings."""
+    with_comma = [i for i, text in enumerate(column.texts) if "," in text and isinstance(column.unique[i], str)]
+    if not with_comma:
+        return None
+    seen = {i: separators_in(column.texts[i]) for i in with_comma}
+    dotted = [text for text, value in zip(column.texts, column.unique, strict=True) if isinstance(value, str) and "." in text and "," not in text][:2000]
+    comma = any(s.decimal_comma for s in seen.values())
+    dot = any(s.decimal_dot for s in seen.values()) or any(separators_in(text).decimal_dot for text in dotted)
+    unclear = np.zeros(len(column.unique), dtype=bool)
+    unclear[[i for i, s in seen.items() if s.open_comma]] = True
+    if comma and not dot:
+        return True
+    if not unclear.any():
+        return None
+    decided, severity, why = False, Severity.NOTES, ""
+    if comma and dot:
+        severity, why = Severity.DOUBTS, "; the column writes decimals both with commas and with dots"
+    elif not dot:
+        decided, severity, why = _comma_by_range(column, unclear)
+    rows = column.rows_of(unclear)
+    taken = "decimal" if decided else "thousands"
+    column.note(f"comma_read_as_{taken}", severity, rows, f"a lone comma before three digits{why}", "read as a decimal comma" if decided else "read as a thousands separator")
+    return decided
+
+
+def _comma_by_range(column: Column, unclear: np.ndarray) -> tuple[bool, Severity, str]:
+    """(decimal?, severity, words): only one reading may be possible for the attribute."""
+    attribute = column.attribute
+    if not attribute.possible or attribute.dimension in ("", "money"):
+        return False, Severity.NOTES, ""
+    fits = {False: 0, True: 0}
+    for i in np.flatnonzero(unclear):
+        for decimal in fits:
+            read = read_quantity(column.texts[i], attribute.dimension, decimal)
+            unit = read.unit or column.unit
+            if not read.error and unit:
+                fits[decimal] += attribute.possible[0] <= float(from_unit(read.number, unit, attribute.dimension)) <= attribute.possible[1]
+    if fits[True] and not fits[False]:
+        return True, Severity.NOTES, "; as thousands it would not be possible"
+    if fits[False] and not fits[True]:
+        return False, Severity.NOTES, "; as decimals it would not be possible"
+    return False, Severity.DOUBTS, "; nothing in the column tells thousands from decimals"
+
+
+def _read_cell(column: Column, value: object, text: str, comma: bool | None) -> tuple[float, str, str, str, str]:
+    """(number, unit, doubt, remark, error) of one distinct cell."""
+    attribute = column.attribute
+    if isinstance(value, (bool, np.bool_)):
+        return np.nan, "", "", "", "yes or no where a number is expected"
+    if isinstance(value, (int, float, np.number)):
+        return float(value) if abs(value) < 1e300 else np.inf, "", "", "", ""
+    if isinstance(value, (datetime.date, datetime.time)):
+        return np.nan, "", "", "", "a date where a number is expected; the spreadsheet may have turned a fraction into a date"
+    if attribute.name == "stated_rating" and CLASS_NAME.fullmatch(text.strip()):
+        return np.nan, "", "", "", "a class name, not a pressure"
+    read = read_quantity(text, attribute.dimension, comma)
+    if read.doubt.startswith("a class number") and attribute.name != "pipe_pressure_class":
+        return np.nan, "", "", "", "a class name, not a pressure"
+    return read.number, read.unit or "", read.doubt, read.remark, read.error
+
+
+def _read_numbers(column: Column) -> tuple[np.ndarray, np.ndarray]:
+    """(numbers, unit per row: "" bare) of a column with text in it; unreadable cells noted."""
+    comma = decimal_comma_of(column)
+    empty = (np.nan, "", "", "", "")
+    reads = [empty if missing else _read_cell(column, value, text, comma) for value, text, missing in zip(column.unique, column.texts, column.missing, strict=True)]
+    numbers, units, doubts, remarks, errors = (list(part) for part in zip(*reads, strict=True)) if reads else ([], [], [], [], [])
+    column.note_each("unreadable", Severity.DOUBTS, errors, "cell not used", accepted(column.attribute.dimension))
+    column.note_each("written_loosely", Severity.DOUBTS, doubts, "number used")
+    column.note_each("written_with_words", Severity.NOTES, remarks, "number used")
+    if column.attribute.dimension == "money":
+        _note_currencies(column)
+    return column.spread(numbers, float, np.nan), column.spread(units, object, "")
+
+
+def _note_currencies(column: Column) -> None:
+    found = sorted({CURRENCIES.get(mark.lower(), mark) for text in column.texts for mark in CURRENCY.findall(text)})
+    if len(found) > 1:
+        column.note_column("currencies", Severity.DOUBTS, f"amounts in more than one currency: {', '.join(found)}", "all taken as the owner's currency; nothing is converted")
+
+
+def _limit(column: Column, values: np.ndarray, origin: np.ndarray | Origin) -> tuple[np.ndarray, np.ndarray]:
+    """Drop what is impossible, doubt what is unusual."""
+    attribute = column.attribute
+    infinite = np.isinf(values)
+    values = np.where(infinite, np.nan, values)
+    out = infinite
+    if attribute.possible:
+        low, high = attribute.possible
+        out = (values < low * (1 - 1e-9) - 1e-12) | (values > high * (1 + 1e-9) + 1e-12)
+        for unit, here in slips(attribute, values, out):
+            column.note("unit_slip", Severity.DOUBTS, here, f"not possible for {attribute.label.lower()}; it would be usual in {unit}, so perhaps the unit is wrong", "cell not used")
+            out &= ~here
+            values = np.where(here, np.nan, values)
+        column.note("out_of_range", Severity.DOUBTS, out | infinite, f"not possible for {attribute.label.lower()}; accepted: {_span(attribute, low, high)}", "cell not used")
+        values = np.where(out, np.nan, values)
+    else:
+        column.note("out_of_range", Severity.DOUBTS, infinite, "not a finite number", "cell not used")
+    if attribute.plausible:
+        low, high = attribute.plausible
+        odd = (values < low * (1 - 1e-9)) | (values > high * (1 + 1e-9))
+        column.note("unusual", Severity.DOUBTS, odd, f"unusual for {attribute.label.lower()}; usual: {_span(attribute, low, high)}", "used as written")
+    return values, np.where(np.isnan(values), np.uint8(Origin.MISSING), np.asarray(origin, dtype=np.uint8))
+
+
+def _span(attribute: Attribute, low: float, high: float) -> str:
+    if not attribute.dimension or attribute.dimension == "money":
+        return f"{low:g} to {high:g}"
+    return f"{show(low, attribute.dimension, attribute.metric)} to {show(high, attribute.dimension, attribute.metric)}"
+
+
+def read_quantities(column: Column) -> tuple[np.ndarray, np.ndarray]:
+    """(SI values, origins): each cell's own unit, else the heading's, else one decided from the values."""
+    attribute = column.attribute
+    default = column.unit or ("money" if attribute.dimension == "money" else "")
+    if column.numeric and default:
+        values = from_unit(column.floats(), default, attribute.dimension)
+        return _limit(column, values, Origin.READ if default in SI_UNITS else Origin.CONVERTED)
+    if column.numeric:
+        numbers, units = column.floats(), np.full(len(column), "", dtype=object)
+    else:
+        numbers, units = _read_numbers(column)
+    known = np.isfinite(numbers)
+    bare = known & (units == "")
+    if bare.any():
+        units = np.where(bare, default or decide_units(column, numbers, bare), units)
+    values = np.where(np.isinf(numbers), numbers, np.nan)
+    origin = np.full(len(numbers), Origin.CONVERTED, dtype=np.uint8)
+    left = known.copy()
+    for unit in _distinct(units[known]):
+        here = left & (units == unit)
+        left &= ~here
+        values[here] = from_unit(numbers[here], unit, attribute.dimension)
+        if unit in SI_UNITS:
+            origin[here] = Origin.READ
+    column.note("unit_unknown", Severity.DOUBTS, left, f"a bare number, and no unit makes it a usual {attribute.label.lower()}", "cell not used; write the unit in the heading or the cell")
+    return _limit(column, values, origin)
+
+
+def _distinct(units: np.ndarray) -> list[str]:
+    return sorted(set(units.tolist()) - {""})
+
+
+def _plain_numbers(column: Column) -> np.ndarray:
+    return column.floats() if column.numeric else _read_numbers(column)[0]
+
+
+def read_plain_numbers(column: Column) -> tuple[np.ndarray, np.ndarray]:
+    """(numbers without a dimension, origins)."""
+    return _limit(column, _plain_numbers(column), Origin.READ)
+
+
+def read_counts(column: Column) -> tuple[np.ndarray, np.ndarray]:
+    """(whole numbers, origins)."""
+    numbers = _plain_numbers(column)
+    broken = np.isfinite(numbers) & (numbers != np.round(numbers))
+    column.note("not_whole", Severity.DOUBTS, broken, "not a whole number", "cell not used")
+    return _limit(column, np.where(broken, np.nan, numbers), Origin.READ)
+
+
