@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from screener.inventory.fill_pipe import PRACTICE
-from screener.inventory.gaps import Gaps
+from screener.inventory.gaps import Gaps, among
 from screener.records import Origin
 from screener.settings import Settings
 from screener.standards import materials, pipes
@@ -30,7 +30,7 @@ REQUIRED_STRESS_FACTOR = {"none": 1.0, "flat rubber": 1.0, "profiled rubber with
 
 def fill_faces(gaps: Gaps) -> None:
     for attribute in ("mating_side", "gasket"):
-        unknown = np.array([value == "unknown" for value in gaps[attribute]])
+        unknown = (gaps[attribute] == "unknown")
         gaps.reject(attribute, unknown)
     chamber = gaps["setting"] == "chamber"
     gaps.fill("mating_side", "valve", where=chamber, rule="in a chamber: a valve", source=PRACTICE, scatter=0.4)
@@ -58,7 +58,7 @@ def fill_bolts(gaps: Gaps) -> None:
     )
     year = gaps["year_installed"]
     era = np.digitize(np.where(np.isnan(year), 0.0, year), [1990, 2005])
-    vote, agreement = gaps.group_vote("bolt_grade", [metric_bolt, era, gaps["zone"]], 5, 0.6)
+    vote, agreement = gaps.group_vote("bolt_grade", [metric_bolt, era, "zone"], 5, 0.6)
     gaps.fill(
         "bolt_grade",
         vote,
@@ -96,7 +96,7 @@ def fill_bolts(gaps: Gaps) -> None:
 def fill_torque(gaps: Gaps, settings: Settings) -> None:
     """Nut factor, tightening, and the torque where none is on record."""
     for attribute in ("bolt_lubrication", "tightening_method"):
-        gaps.reject(attribute, np.array([value == "unknown" for value in gaps[attribute]]))
+        gaps.reject(attribute, (gaps[attribute] == "unknown"))
     known = gaps.is_read("assembly_torque")
     gaps.add("torque_is_known")
     gaps["torque_is_known"][:] = known
@@ -164,4 +164,4 @@ def required_stress_factor(gaps: Gaps) -> np.ndarray:
 
 
 def drilling_is_standard(gaps: Gaps) -> np.ndarray:
-    return np.isin(gaps["ring_standard"], STANDARDS)
+    return among(gaps["ring_standard"], STANDARDS)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from screener.inventory.gaps import Gaps
+from screener.inventory.gaps import Gaps, among
 from screener.records import Origin, Severity
 from screener.settings import Settings
 from screener.standards import pipes
@@ -35,8 +35,8 @@ def fill_year_installed(gaps: Gaps) -> None:
 
 def fill_size_system(gaps: Gaps) -> None:
     """Which table the size belongs to: what the file says, else what else the row says."""
-    metric_material = np.isin(gaps["pe_material"], ["PE80", "PE100"])
-    inch_material = np.isin(gaps["pe_material"], ["PE4710", "PE3608", "PE3408"])
+    metric_material = among(gaps["pe_material"], ["PE80", "PE100"])
+    inch_material = among(gaps["pe_material"], ["PE4710", "PE3608", "PE3408"])
     metric_ring = gaps["ring_standard"] == "EN 1092-1"
     size = gaps["nominal_size"]
     inches = size / INCH
@@ -60,7 +60,7 @@ def fill_size_system(gaps: Gaps) -> None:
             rule=f"the outside diameter given is that of {system} pipe of this size",
             source="ASTM F714 / AWWA C906 (outside diameters)",
         )
-    vote, agreement = gaps.group_vote("size_system", [gaps["zone"]], 5, 0.6)
+    vote, agreement = gaps.group_vote("size_system", ["zone"], 5, 0.6)
     gaps.fill(
         "size_system",
         vote,
@@ -172,11 +172,11 @@ def fill_dimension_ratio(gaps: Gaps) -> None:
         scatter=0.03,
     )
     for group, words in (("main_id", "the same main"), ("zone", "the same zone")):
-        vote, _agreement = gaps.group_vote("dimension_ratio", [gaps[group]], 1, 0.0)
+        vote, _agreement = gaps.group_vote("dimension_ratio", [group], 1, 0.0)
         gaps.fill(
             "dimension_ratio",
             vote.astype(float),
-            where=np.array([value is not None for value in gaps[group]]),
+            where=gaps.known(group),
             rule=f"commonest ratio on {words}",
             source="this inventory",
             scatter=0.1 if group == "main_id" else 0.2,
@@ -231,7 +231,7 @@ def fill_stub_end(gaps: Gaps, settings: Settings) -> None:
 
 def fill_setting(gaps: Gaps, settings: Settings) -> None:
     def settle(attribute, value, where, rule, scatter=0.3):
-        unknown = np.array([v == "unknown" for v in gaps[attribute]])
+        unknown = (gaps[attribute] == "unknown")
         if unknown.any():
             gaps.reject(attribute, unknown)
         gaps.fill(attribute, value, where=where, rule=rule, source=PRACTICE, scatter=scatter)

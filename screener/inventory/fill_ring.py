@@ -5,11 +5,11 @@ from __future__ import annotations
 import numpy as np
 
 from screener.inventory.fill_pipe import PRACTICE
-from screener.inventory.gaps import Gaps
+from screener.inventory.gaps import Gaps, among
 from screener.records import Origin, Severity
 from screener.settings import Settings
 from screener.standards import materials
-from screener.standards.rings import CLASSES, CLASSES_OF, INCH_STANDARDS, STANDARDS, ring_rows, ring_table
+from screener.standards.rings import CLASSES, CLASSES_OF, INCH_STANDARDS, STANDARDS, ring_rows, ring_table, rows_by_code, standard_codes
 from screener.standards.tables import INCH
 
 ERAS = (1900, 1985, 1997, 2007, 2015, 2100)
@@ -24,7 +24,7 @@ def fill_ring_standard(gaps: Gaps) -> None:
     own = gaps["ring_standard"] == "maker's own"
     for standard in ("EN 1092-1", "AWWA C207", "ASME B16.5", "ASME B16.1"):
         classes = CLASSES_OF[standard]
-        where = np.isin(ring_class, classes) & ~own
+        where = among(ring_class, classes) & ~own
         if standard == "ASME B16.5":
             where &= gaps["nominal_size"] <= 24.01 * INCH
         gaps.fill(
@@ -54,7 +54,7 @@ def check_ring_class(gaps: Gaps) -> None:
     standard, ring_class = gaps["ring_standard"], gaps["ring_class"]
     wrong = np.zeros(gaps.rows, dtype=bool)
     for name, classes in CLASSES_OF.items():
-        wrong |= (standard == name) & gaps.known("ring_class") & ~np.isin(ring_class, classes)
+        wrong |= (standard == name) & gaps.known("ring_class") & ~among(ring_class, classes)
     gaps.ledger.finding(
         "class_not_in_standard",
         Severity.DOUBTS,
@@ -72,8 +72,9 @@ def classes_that_fit(gaps: Gaps) -> dict[str, np.ndarray]:
     table = ring_table()
     slack = {"ring_outside_diameter": 0.006, "bolt_circle_diameter": 0.004, "bolt_count": 0.5, "bolt_diameter": 0.0016}
     fits = {}
-    for ring_class in CLASSES:
-        row = ring_rows(gaps["ring_standard"], np.full(gaps.rows, ring_class, dtype=object), gaps["flange_size"])
+    standard = standard_codes(gaps["ring_standard"])
+    for code, ring_class in enumerate(CLASSES):
+        row = rows_by_code(standard, code, gaps["flange_size"])
         good = row >= 0
         for attribute, tolerance in slack.items():
             column = {"ring_outside_diameter": "outside_diameter"}.get(attribute, attribute)
@@ -102,8 +103,9 @@ def fill_class_from_dimensions(gaps: Gaps, fits: dict[str, np.ndarray]) -> None:
         scatter=0.05,
     )
     misfit = np.full(matrix.shape, np.inf)
+    standard = standard_codes(gaps["ring_standard"])
     for k, ring_class in enumerate(CLASSES):
-        row = ring_rows(gaps["ring_standard"], np.full(gaps.rows, ring_class, dtype=object), gaps["flange_size"])
+        row = rows_by_code(standard, k, gaps["flange_size"])
         ratio = gaps["ring_thickness"] / np.where(row >= 0, table.thickness[row], np.nan)
         misfit[:, k] = np.where(fits[ring_class] & np.isfinite(ratio), np.abs(np.log(np.where(np.isfinite(ratio), ratio, 1.0))), np.inf)
     best = misfit.argmin(axis=1)
@@ -121,7 +123,7 @@ def fill_class_from_dimensions(gaps: Gaps, fits: dict[str, np.ndarray]) -> None:
 
 def _has_rivals(gaps: Gaps) -> np.ndarray:
     """Standards with more than one class, where the drilling can tell them apart."""
-    return np.isin(gaps["ring_standard"], [name for name, classes in CLASSES_OF.items() if len(classes) > 1])
+    return among(gaps["ring_standard"], [name for name, classes in CLASSES_OF.items() if len(classes) > 1])
 
 
 def fill_ring_class(gaps: Gaps, settings: Settings) -> None:
@@ -143,9 +145,9 @@ def fill_ring_class(gaps: Gaps, settings: Settings) -> None:
         return allowed
 
     for keys, words in (
-        ([standard, era, size, gaps["contractor"]], "same standard, era, size and crew"),
-        ([standard, era, size], "same standard, era and size"),
-        ([standard, era, large], "same standard, era and size group"),
+        (["ring_standard", era, size, "contractor"], "same standard, era, size and crew"),
+        (["ring_standard", era, size], "same standard, era and size"),
+        (["ring_standard", era, large], "same standard, era and size group"),
     ):
         vote, agreement = gaps.group_vote("ring_class", keys, settings.class_vote_count, settings.class_vote_share)
         gaps.fill(
@@ -158,7 +160,7 @@ def fill_ring_class(gaps: Gaps, settings: Settings) -> None:
         )
     defaults = [
         (standard == "AWWA C207", "D", "class D where nothing else is known"),
-        (np.isin(standard, ["ASME B16.5", "ASME B16.47 A"]), "150", "class 150, the standard's only class here"),
+        (among(standard, ["ASME B16.5", "ASME B16.47 A"]), "150", "class 150, the standard's only class here"),
         (standard == "ASME B16.1", "125", "class 125 where nothing else is known"),
         (metric & (ratio < 14.0), "PN16", "PN16 drilling on thick-walled metric pipe"),
         (metric, "PN10", "PN10 drilling on thin-walled metric pipe"),
@@ -240,10 +242,10 @@ def fill_ring_rest(gaps: Gaps, row: np.ndarray) -> None:
     )
     _scale_metric_thickness(gaps)
     form = gaps["ring_form"]
-    unknown = np.array([value == "unknown" for value in form])
+    unknown = (form == "unknown")
     gaps.reject("ring_form", unknown)
-    standard_ring = np.isin(gaps["ring_standard"], STANDARDS)
-    iron = np.isin(gaps["ring_material"], ["ductile iron", "ASTM A536 65-45-12", "ASTM A536 60-40-18", "EN-GJS-400-15", "EN-GJS-500-7"])
+    standard_ring = among(gaps["ring_standard"], STANDARDS)
+    iron = among(gaps["ring_material"], ["ductile iron", "ASTM A536 65-45-12", "ASTM A536 60-40-18", "EN-GJS-400-15", "EN-GJS-500-7"])
     gaps.fill("ring_form", "contoured", where=iron & ~standard_ring, rule="cast ring of a maker's own design: contoured", source=PRACTICE, scatter=0.3)
     gaps.fill("ring_form", "flat plate", rule="flat plate where nothing says otherwise", source=PRACTICE, scatter=0.15)
     contoured = gaps["ring_form"] == "contoured"
@@ -270,11 +272,11 @@ def fill_ring_rest(gaps: Gaps, row: np.ndarray) -> None:
         rule="pressure rating of the ring's class, meant for a flange welded to steel pipe",
         source="class pressure of the standard (each row with its status)",
     )
-    gaps.fill("rating_basis", "welded", where=np.isin(gaps["ring_standard"], STANDARDS), rule="class ratings are for welded flanges", source=PRACTICE)
+    gaps.fill("rating_basis", "welded", where=among(gaps["ring_standard"], STANDARDS), rule="class ratings are for welded flanges", source=PRACTICE)
     gaps.fill("rating_basis", "loose", where=gaps["ring_form"] != "flat plate", rule="a contoured ring is rated as a loose ring", source=PRACTICE, scatter=0.3)
     gaps.fill("rating_basis", "welded", rule="welded unless the paper says loose", source=PRACTICE, scatter=0.2)
     gaps.fill("stated_safety_factor", 2.0, rule="factor 2 on yield", source="AWWA C207: 16 ksi on 32 ksi (read in secondary summaries); else " + PRACTICE, scatter=0.15)
-    coat = np.array([value == "unknown" for value in gaps["ring_coating"]])
+    coat = (gaps["ring_coating"] == "unknown")
     gaps.reject("ring_coating", coat)
     stainless = np.char.startswith(np.asarray(gaps["ring_material"]).astype(str), "ASTM A240")
     gaps.fill("ring_coating", "stainless", where=stainless, rule="stainless ring", source="material")

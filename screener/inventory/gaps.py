@@ -24,6 +24,7 @@ class Gaps:
         self._values = {}
         self._origin = {}
         self.scatter: dict[str, np.ndarray] = {}
+        self._codes: dict[str, np.ndarray] = {}
         for name, attribute in inventory_attributes().items():
             numeric = attribute.kind in NUMERIC
             if name in values:
@@ -54,8 +55,8 @@ class Gaps:
         self._origin[attribute] = np.full(self.rows, Origin.MISSING, dtype=np.uint8)
 
     def missing(self, attribute: str) -> np.ndarray:
-        values = self._values[attribute]
-        return np.isnan(values) if values.dtype == float else pd.isna(values)
+        """True where the attribute has no value; its origin code says so, which is cheaper than looking at the values."""
+        return self._origin[attribute] == Origin.MISSING
 
     def known(self, attribute: str) -> np.ndarray:
         return ~self.missing(attribute)
@@ -87,10 +88,14 @@ class Gaps:
         """Fill what is still missing, where the rule has a value; returns the mask filled."""
         target = self._values[attribute]
         given = np.broadcast_to(np.asarray(values, dtype=target.dtype), (self.rows,))
-        has = ~np.isnan(given) if target.dtype == float else ~pd.isna(given)
-        mask = self.missing(attribute) & has
+        mask = self.missing(attribute)
         if where is not None:
             mask &= where
+        open_rows = np.flatnonzero(mask)
+        if len(open_rows):
+            offered = given[open_rows]
+            absent = np.isnan(offered) if target.dtype == float else pd.isna(offered)
+            mask[open_rows[absent]] = False
         if not mask.any():
             return mask
         target[mask] = given[mask]
@@ -119,37 +124,55 @@ class Gaps:
         spread = self.scatter.setdefault(attribute, np.zeros(self.rows))
         spread[mask] = scatter
 
+    def group_codes(self, by: str) -> np.ndarray:
+        """Integer code of each row's group, -1 without one; names compared without case."""
+        if by not in self._codes:
+            self._codes[by] = pd.factorize(folded(self._values[by]))[0]
+        return self._codes[by]
+
     def group_median(self, attribute: str, by: str) -> np.ndarray:
         """Median of the values read in the same group, per row; NaN where the group has none."""
-        values = pd.Series(np.where(self.is_read(attribute), self._values[attribute], np.nan))
-        keys = folded(self._values[by])
-        medians = values.groupby(keys).median()
-        return keys.map(medians).to_numpy(dtype=float)
+        code = self.group_codes(by)
+        known = self.is_read(attribute) & (code >= 0)
+        if not known.any():
+            return np.full(self.rows, np.nan)
+        medians = pd.Series(self._values[attribute][known]).groupby(code[known]).median()
+        table = np.full(code.max() + 2, np.nan)
+        table[medians.index.to_numpy()] = medians.to_numpy()
+        return table[code]
 
     def group_vote(self, attribute: str, keys: list, least: int, share: float) -> tuple[np.ndarray, np.ndarray]:
         """(the commonest value read among rows with equal keys, its share), where the vote is clear.
 
-        Clear: at least `least` rows of the group have a value and `share` of them agree.
-        None and NaN elsewhere.
+        keys: attribute names or arrays of numbers. Clear: at least `least` rows of
+        the group have a value and `share` of them agree. None and NaN elsewhere.
         """
-        frame = pd.DataFrame({f"k{i}": pd.factorize(folded(key))[0] for i, key in enumerate(keys)})
-        group = frame.groupby(list(frame.columns), sort=False).ngroup().to_numpy()
-        code, names = pd.factorize(np.where(self.is_read(attribute), self._values[attribute], None))
+        group = np.zeros(self.rows, dtype=np.int64)
+        for key in keys:
+            code = self.group_codes(key) if isinstance(key, str) else pd.factorize(key)[0]
+            group = pd.factorize(group * (code.max() + 2) + code + 1)[0]
+        known = np.flatnonzero(self.is_read(attribute))
         winner = np.full(self.rows, None, dtype=object)
         agreement = np.full(self.rows, np.nan)
-        known = code >= 0
-        if not known.any():
+        if not len(known):
             return winner, agreement
-        counts = pd.crosstab(group[known], code[known])
-        total = counts.to_numpy().sum(axis=1)
-        best = counts.to_numpy().argmax(axis=1)
-        top = counts.to_numpy().max(axis=1)
-        clear = (total >= least) & (top >= share * total)
-        place = counts.index.get_indexer(group)
-        ok = (place >= 0) & clear[place]
-        winner[ok] = np.asarray(names, dtype=object)[counts.columns.to_numpy()[best[place[ok]]]]
-        agreement[ok] = (top / total)[place[ok]]
+        code, names = pd.factorize(self._values[attribute][known])
+        counts = np.zeros((group.max() + 1, len(names)), dtype=np.int64)
+        np.add.at(counts, (group[known], code), 1)
+        total, best, top = counts.sum(axis=1), counts.argmax(axis=1), counts.max(axis=1)
+        clear = (total >= max(least, 1)) & (top >= share * total)
+        ok = clear[group]
+        winner[ok] = np.asarray(names, dtype=object)[best[group[ok]]]
+        agreement[ok] = (top / np.maximum(total, 1))[group[ok]]
         return winner, agreement
+
+
+def among(values: np.ndarray, words) -> np.ndarray:
+    """True where a text value is one of a few words."""
+    found = np.zeros(len(values), dtype=bool)
+    for word in words:
+        found |= values == word
+    return found
 
 
 def folded(words) -> pd.Series:

@@ -98,19 +98,28 @@ def _by_wording(table: RawTable, settled: set[int], columns: dict, matched: dict
     options = []
     for k, heading in enumerate(table.headings):
         if k not in settled:
-            options += [(score, -k, k, meaning) for meaning in meanings(heading) if (score := _score(table, k, meaning)) is not None]
+            options += [(score, -k, k, meaning) for said in meanings(heading) if (score := _score(table, k, meaning := _trusted(table, k, said))) is not None]
     scores: dict[str, float] = {}
     rivals: dict[int, tuple[str, float]] = {}
+    lost: dict[int, float] = {}
     for score, _, k, meaning in sorted(options, key=lambda o: (o[0], o[1]), reverse=True):
-        if k in matched or (k in rivals and meaning.strength < SURE):
+        if k in matched or (lost.get(k, 0.0) >= SURE > meaning.strength):
             continue
         if meaning.attribute in columns:
+            lost.setdefault(k, meaning.strength)
             rivals.setdefault(k, (meaning.attribute, score / scores.get(meaning.attribute, 2.0)))
             continue
         columns[meaning.attribute], scores[meaning.attribute] = k, score
         matched[k] = _matched(table, k, meaning)
         rivals.pop(k, None)
     return rivals
+
+
+def _trusted(table: RawTable, k: int, meaning: Meaning) -> Meaning:
+    """The meaning without a unit that is only implied ("DN" is mm) where the values speak against it."""
+    if not meaning.implied or agreement(table.cells.iloc[:, k], inventory_attributes()[meaning.attribute], meaning.unit, ranged=True) >= LEAST_WHEN_UNSURE:
+        return meaning
+    return replace(meaning, unit="", implied=False, reason=meaning.reason.split(", unit ")[0])
 
 
 def _matched(table: RawTable, k: int, meaning: Meaning) -> Matched:
@@ -121,8 +130,10 @@ def _score(table: RawTable, k: int, meaning: Meaning) -> float | None:
     """How well a column is what its heading says; None where its values speak against it."""
     attribute, cells = inventory_attributes()[meaning.attribute], table.cells.iloc[:, k]
     unsure = meaning.strength < SURE
-    share = agreement(cells, attribute, meaning.unit, ranged=unsure or meaning.implied)
+    share = agreement(cells, attribute, meaning.unit, ranged=unsure)
     if share < (LEAST_WHEN_UNSURE if unsure else LEAST_AGREEMENT):
+        return None
+    if unsure and (sign := by_values(cells)) and sign != attribute.name:
         return None
     if unsure and attribute.name in ("joint_id", "ring_bore"):
         apart = names_apart(cells)

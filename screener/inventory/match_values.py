@@ -33,14 +33,13 @@ def sample_of(cells: pd.Series) -> list:
 def agreement(cells: pd.Series, attribute: Attribute, unit: str, ranged: bool) -> float:
     """Share of a sample of the cells that could belong to the attribute; 0.5 for an empty column.
 
-    ranged: a number must also be possible for the attribute in `unit` (or in
-    a usual unit where that is ""); otherwise being a number is enough.
+    ranged: a number must also be usual for the attribute in `unit` (or in one
+    of the usual units where that is ""); otherwise being a number is enough.
     """
     sample = sample_of(cells)
     if not sample:
         return 0.5
-    share = sum(could_be(value, attribute, unit, ranged) for value in sample) / len(sample)
-    return share
+    return sum(could_be(value, attribute, unit, ranged) for value in sample) / len(sample)
 
 
 def names_apart(cells: pd.Series) -> bool:

@@ -6,13 +6,14 @@ import difflib
 import re
 from collections import Counter
 from dataclasses import dataclass
-from functools import cache
+from functools import cache, lru_cache
 
 from screener.columns import Attribute, inventory_attributes
-from screener.units import find_unit, tidy
+from screener.units import dimensions_of, find_unit, tidy
 
 CLOSE_ENOUGH = 0.86
 WORD_CLOSE_ENOUGH = 0.7
+LONGEST = 50
 # Words that alone say too little: used only when the values agree.
 WEAK = frozenset(
     "od id class material notes rating year size pressure bolts bolt thickness thk line area x y z level profile surge cycles position finish route main "
@@ -25,9 +26,9 @@ ALSO = {
     "class": ("pipe_pressure_class",),
     "pressure class": ("ring_class",),
     "material": ("ring_material", "bolt_grade"),
-    "rating": ("pipe_pressure_class", "ring_class"),
+    "rating": ("ring_class", "pipe_pressure_class"),
     "flange rating": ("ring_class",),
-    "pressure rating": ("stated_rating", "pipe_pressure_class", "ring_class"),
+    "pressure rating": ("stated_rating", "ring_class", "pipe_pressure_class"),
     "grade": ("bolt_grade", "pe_material", "ring_material"),
     "standard": ("ring_standard",),
     "type": ("ring_form",),
@@ -87,7 +88,7 @@ def vocabulary() -> tuple[dict[str, tuple[str, str]], dict[tuple[str, ...], tupl
     exact: dict[str, tuple[str, str]] = {}
     for name, attribute in inventory_attributes().items():
         for text, what in ((attribute.label, "its label"), (name, "its name"), (attribute.machine_name, "its machine name")):
-            exact[" ".join(words_of(text, keep_brackets=False))] = (name, what)
+            exact[" ".join(words_of(text, keep_brackets=False))] = exact[" ".join(words_of(text))] = (name, what)
     for name, attribute in inventory_attributes().items():
         for text in attribute.synonyms:
             exact.setdefault(" ".join(words_of(text)), (name, f"synonym {text!r}"))
@@ -105,7 +106,7 @@ def unit_in_heading(heading: str, attribute: Attribute) -> str:
     return _split_unit(heading, attribute.dimension)[0] if attribute.dimension else ""
 
 
-@cache
+@lru_cache(maxsize=8192)
 def _split_unit(heading: str, dimension: str) -> tuple[str, tuple[str, ...]]:
     """(unit of `dimension` in the heading or "", the heading's words without it)."""
     text = tidy(heading)
@@ -136,10 +137,11 @@ def _split_unit(heading: str, dimension: str) -> tuple[str, tuple[str, ...]]:
     return "", tuple(words_of(heading))
 
 
-def meanings(heading: str) -> list[Meaning]:
+@lru_cache(maxsize=8192)
+def meanings(heading: str) -> tuple[Meaning, ...]:
     """What a heading can mean, strongest first."""
     if heading.strip().lower() in GEOMETRY:
-        return []
+        return ()
     plain = words_of(heading)
     found = [m for words, dimension in _readings(heading, plain) for m in _by_dictionary(heading, list(words), dimension)]
     if not found:
@@ -148,7 +150,7 @@ def meanings(heading: str) -> list[Meaning]:
     for meaning in found:
         if meaning.attribute not in best or meaning.strength > best[meaning.attribute].strength:
             best[meaning.attribute] = meaning
-    return sorted(best.values(), key=lambda m: -m.strength)
+    return tuple(sorted(best.values(), key=lambda m: -m.strength))
 
 
 def _readings(heading: str, plain: list[str]) -> list[tuple[tuple[str, ...], str]]:
@@ -226,20 +228,24 @@ def _without_brackets(heading: str) -> list[Meaning]:
     words = words_of(heading, keep_brackets=False)
     if not inside or not words or any(w in CHANGES or w in GROUP_WORDS for w in inside):
         return []
-    made = [m for m in _by_dictionary(heading, words, "")]
-    return [Meaning(m.attribute, m.unit, m.reason, 0.8 * m.strength, m.implied) for m in made]
+    made = _by_dictionary(heading, words, "")
+    units = {d for piece in re.findall(r"[(\[{]([^)\]}]*)[)\]}]", tidy(heading)) for d in dimensions_of(piece.strip())}
+    kept = [m for m in made if not units or not inventory_attributes()[m.attribute].dimension]
+    return [Meaning(m.attribute, m.unit, m.reason, 0.8 * m.strength, m.implied) for m in kept]
 
 
 def _by_likeness(heading: str, plain: list[str]) -> list[Meaning]:
     """The dictionary's closest wording, word by word, so that ring and pipe or min and max are never alike."""
     exact, _ = vocabulary()
     attributes = inventory_attributes()
-    readings = [(list(words), dimension) for words, dimension in _readings(heading, plain) if len("".join(words)) > 4]
-    for words, dimension in sorted(readings, key=lambda r: not r[1]):
-        text = " ".join(words)
-        for close in difflib.get_close_matches(text, exact, n=5, cutoff=CLOSE_ENOUGH):
+    readings = {" ".join(words): dimension for words, dimension in reversed(_readings(heading, plain))}
+    for text, dimension in sorted(readings.items(), key=lambda r: r[1]):
+        if not 4 < len(text) <= LONGEST:
+            continue
+        near = [wording for wording in exact if abs(len(wording) - len(text)) <= 0.3 * len(text)]
+        for close in difflib.get_close_matches(text, near, n=5, cutoff=CLOSE_ENOUGH):
             name, _what = exact[close]
-            if (dimension and attributes[name].dimension != dimension) or not _same_words(words, close.split()):
+            if (dimension and attributes[name].dimension != dimension) or not _same_words(text.split(), close.split()):
                 continue
             likeness = difflib.SequenceMatcher(None, text, close).ratio()
             meaning = _meaning(heading, name, f"close to {close!r}", 0.7 * likeness, dimension)

@@ -65,6 +65,14 @@ def _comma_by_range(column: Column, unclear: np.ndarray) -> tuple[bool, Severity
     return False, Severity.DOUBTS, "; nothing in the column tells thousands from decimals"
 
 
+def is_class_name(text: str, attribute: Attribute) -> bool:
+    """Whether a text names a class ("150#", "class 150") where a pressure is meant."""
+    if attribute.dimension != "pressure" or attribute.name == "pipe_pressure_class":
+        return False
+    name = CLASS_NAME.fullmatch(text.strip())
+    return bool(name) and (attribute.name == "stated_rating" or name.group().lower().startswith("cl"))
+
+
 def _read_cell(column: Column, value: object, text: str, comma: bool | None) -> tuple[float, str, str, str, str]:
     """(number, unit, doubt, remark, error) of one distinct cell."""
     attribute = column.attribute
@@ -74,11 +82,9 @@ def _read_cell(column: Column, value: object, text: str, comma: bool | None) -> 
         return float(value) if abs(value) < 1e300 else np.inf, "", "", "", ""
     if isinstance(value, (datetime.date, datetime.time)):
         return np.nan, "", "", "", "a date where a number is expected; the spreadsheet may have turned a fraction into a date"
-    if attribute.name == "stated_rating" and CLASS_NAME.fullmatch(text.strip()):
+    if is_class_name(text, attribute):
         return np.nan, "", "", "", "a class name, not a pressure"
     read = read_quantity(text, attribute.dimension, comma)
-    if read.doubt.startswith("a class number") and attribute.name != "pipe_pressure_class":
-        return np.nan, "", "", "", "a class name, not a pressure"
     return read.number, read.unit or "", read.doubt, read.remark, read.error
 
 

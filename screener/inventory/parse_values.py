@@ -12,6 +12,7 @@ from screener.columns import Attribute
 from screener.inventory.bare_numbers import CANDIDATES
 from screener.inventory.parse_column import cell_text
 from screener.inventory.parse_dates import from_serial, read_date
+from screener.inventory.parse_numbers import is_class_name
 from screener.inventory.parse_words import read_category
 from screener.units import from_unit, is_missing_word, read_quantity
 
@@ -19,7 +20,7 @@ from screener.units import from_unit, is_missing_word, read_quantity
 def could_be(value: object, attribute: Attribute, unit: str = "", ranged: bool = False) -> bool:
     """Whether one cell could belong to an attribute.
 
-    unit: of bare numbers, where the heading names one; ranged: a quantity must also be possible.
+    unit: of bare numbers, where the heading names one; ranged: a number must also be usual.
     """
     kind = attribute.kind
     if isinstance(value, (bool, np.bool_)):
@@ -51,14 +52,14 @@ def _is_number(number: float | None, text: str, attribute: Attribute, unit: str,
     own = ""
     if number is None:
         read = read_quantity(text, attribute.dimension)
-        if read.error:
+        if read.error or is_class_name(text, attribute):
             return False
         number, own = read.number, read.unit or ""
     if attribute.kind == "count" and number != round(number):
         return False
     if not attribute.possible:
         return True
-    low, high = attribute.possible
+    low, high = (attribute.plausible or attribute.possible) if ranged else attribute.possible
     if not attribute.dimension:
         return low <= number <= high
     if not ranged:

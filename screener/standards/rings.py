@@ -162,17 +162,25 @@ def ring_table() -> RingTable:
     return RingTable(**{key: np.concatenate([part[key] for part in parts]) for key in parts[0]})
 
 
+def standard_codes(standard: np.ndarray) -> np.ndarray:
+    """Position of each joint's standard in `STANDARDS`, -1 where it is none of them."""
+    return codes(standard, STANDARDS)
+
+
+def rows_by_code(standard: np.ndarray, ring_class: np.ndarray | int, flange_size: np.ndarray) -> np.ndarray:
+    """As `ring_rows`, for positions in `STANDARDS` and `CLASSES`."""
+    size = np.where(np.isfinite(flange_size), np.round(flange_size * 1.0e4), -1).astype(np.int64)
+    key = (standard * len(CLASSES) + ring_class) * 1_000_000 + size
+    return exact_rows(_table_keys(), np.where((standard < 0) | (np.asarray(ring_class) < 0) | (size < 0), -1, key))
+
+
+@cache
+def _table_keys() -> np.ndarray:
+    table = ring_table()
+    size = np.round(table.flange_size * 1.0e4).astype(np.int64)
+    return (codes(table.standard, STANDARDS) * len(CLASSES) + codes(table.ring_class, CLASSES)) * 1_000_000 + size
+
+
 def ring_rows(standard: np.ndarray, ring_class: np.ndarray, flange_size: np.ndarray) -> np.ndarray:
     """Row of `ring_table()` for each joint by exact standard, class and size (m); -1 where there is none."""
-    table = ring_table()
-
-    def keys(standards, classes, sizes):
-        size = np.where(np.isfinite(sizes), np.round(sizes * 1.0e4), -1).astype(np.int64)
-        kind = codes(standards, STANDARDS)
-        grade = codes(classes, CLASSES)
-        key = (kind * len(CLASSES) + grade) * 1_000_000 + size
-        return np.where((kind < 0) | (grade < 0) | (size < 0), -1, key)
-
-    return exact_rows(
-        keys(table.standard, table.ring_class, table.flange_size), keys(standard, ring_class, flange_size)
-    )
+    return rows_by_code(standard_codes(standard), codes(ring_class, CLASSES), flange_size)
