@@ -28,6 +28,7 @@ _ISO = re.compile(rf"(\d{{4}})[-/.](\d{{1,2}})(?:[-/.](\d{{1,2}}))?{_TIME}", re.
 _COMPACT = re.compile(r"(1[89]\d\d|20\d\d)(\d\d)(\d\d)")
 _PARTS = re.compile(rf"(\d{{1,2}})\s*[-/. ]\s*(\d{{1,2}})\s*[-/. ]\s*(\d{{4}}|'?\d{{2}}){_TIME}", re.I)
 _NAMED = re.compile(r"(?:(\d{1,2})(?:st|nd|rd|th)?[-./ ]*(?:of )?)?([A-Za-z]{3,9})\.?[-,./ ]*(?:(\d{1,2})(?:st|nd|rd|th)?,? +)?(\d{4}|'?\d{2})")
+_BETWEEN = re.compile(r"[;|\n]|,(?!\s*\d{4}\b)|(?<=\d{4}),|(?<=[/-]\d\d),|\band\b|&")  # "May 12, 1998" stays whole
 _SPAN = re.compile(r"((?:18|19|20)\d\d)\s*(?:-|/|to)\s*((?:18|19|20)?\d\d)", re.I)
 _DECADE = re.compile(r"(early|mid|late)?[- ]*(?:the )?((?:18|19|20)?\d0)'?s", re.I)
 _PART_OF_YEAR = re.compile(r"(early|mid|late|q([1-4])|h([12]))[- /]*((?:18|19|20)\d\d)", re.I)
@@ -74,7 +75,8 @@ def _whole_date(word: str, day_first: bool | None) -> tuple[float, str] | None:
         return decimal_year(*map(int, found.groups())), ""
     if found := _ISO.fullmatch(word):
         year, month, day = found.groups()
-        return decimal_year(int(year), int(month), int(day or 15)), ""
+        if day or int(month) <= 12:
+            return decimal_year(int(year), int(month), int(day or 15)), ""
     if found := _PARTS.fullmatch(word):
         a, b, year = int(found.group(1)), int(found.group(2)), _full_year(found.group(3))
         first_is_day = b <= 12 if day_first is None else day_first
@@ -178,7 +180,7 @@ def read_dates(column: Column, of_table: bool | None = None) -> tuple[np.ndarray
     if column.dated:
         stamps = pd.to_datetime(column.cells)
         length = np.where(stamps.dt.is_leap_year, 366.0, 365.0)
-        return _with_origin((stamps.dt.year + (stamps.dt.dayofyear - 1) / length).to_numpy(dtype=float, na_value=np.nan))
+        return _with_origin((stamps.dt.year + (stamps.dt.day_of_year - 1) / length).to_numpy(dtype=float, na_value=np.nan))
     order = _settle_order(column, of_table)
     reads = [(np.nan, "", "") if missing else _date_of(value, text, order) for value, text, missing in zip(column.unique, column.texts, column.missing, strict=True)]
     values, doubts, errors = (list(part) for part in zip(*reads, strict=True)) if reads else ([], [], [])
@@ -238,7 +240,7 @@ def _dates_of(value: object, text: str, order: bool | None) -> tuple[tuple[float
         year, doubt, error = _date_of(value, text, order)
         return ((year,) if year == year else ()), doubt, error
     found, doubts, bad = [], "", ""
-    for part in re.split(r"[;|\n]|,(?!\s*\d{4}\b)|\band\b|&", text):
+    for part in _BETWEEN.split(text):
         if part.strip():
             year, doubt, error = read_date(part, order)
             doubts = doubts or doubt

@@ -8,10 +8,10 @@ import re
 import numpy as np
 
 from screener.columns import Attribute
-from screener.inventory.bare_numbers import decide_units, slips
+from screener.inventory.bare_numbers import CANDIDATES, USUAL, decide_units
 from screener.inventory.parse_column import Column
 from screener.records import Origin, Severity
-from screener.units import accepted, from_unit, read_quantity, separators_in, show
+from screener.units import accepted, from_unit, read_quantity, separators_in, show, to_unit
 
 SI_UNITS = ("m", "Pa", "N m", "C", "K", "rad", "money")
 # "150#" on a ring's paper is the class 150 of its drilling; such a ring is not rated 150 psi by that name.
@@ -108,8 +108,28 @@ def _note_currencies(column: Column) -> None:
         column.note_column("currencies", Severity.DOUBTS, f"amounts in more than one currency: {', '.join(found)}", "all taken as the owner's currency; nothing is converted")
 
 
-def _limit(column: Column, values: np.ndarray, origin: np.ndarray | Origin) -> tuple[np.ndarray, np.ndarray]:
-    """Drop what is impossible, doubt what is unusual."""
+def _slips(attribute: Attribute, values: np.ndarray, suspect: np.ndarray, units: np.ndarray | str):
+    """(unit, mask) of impossible SI values whose number would be usual in another unit than the one it was taken in."""
+    usual = USUAL.get(attribute.name)
+    if usual is None or attribute.dimension.startswith("temperature") or not suspect.any():
+        return
+    places = np.flatnonzero(suspect)
+    written = np.broadcast_to(np.asarray(units, dtype=object), values.shape)[places]
+    left = np.ones(len(places), dtype=bool)
+    for meant in CANDIDATES.get(attribute.dimension, ()):
+        for unit in _distinct(written[left & (written != meant)]):
+            here = left & (written == unit)
+            moved = from_unit(to_unit(values[places], unit, attribute.dimension), meant, attribute.dimension)
+            here &= (moved >= usual[0]) & (moved <= usual[1])
+            if here.any():
+                left &= ~here
+                mask = np.zeros(len(values), dtype=bool)
+                mask[places[here]] = True
+                yield meant, mask
+
+
+def _limit(column: Column, values: np.ndarray, origin: np.ndarray | Origin, units: np.ndarray | str = "") -> tuple[np.ndarray, np.ndarray]:
+    """Drop what is impossible, doubt what is unusual; units: in which each value was taken."""
     attribute = column.attribute
     infinite = np.isinf(values)
     values = np.where(infinite, np.nan, values)
@@ -117,7 +137,7 @@ def _limit(column: Column, values: np.ndarray, origin: np.ndarray | Origin) -> t
     if attribute.possible:
         low, high = attribute.possible
         out = (values < low * (1 - 1e-9) - 1e-12) | (values > high * (1 + 1e-9) + 1e-12)
-        for unit, here in slips(attribute, values, out):
+        for unit, here in _slips(attribute, values, out, units):
             column.note("unit_slip", Severity.DOUBTS, here, f"not possible for {attribute.label.lower()}; it would be usual in {unit}, so perhaps the unit is wrong", "cell not used")
             out &= ~here
             values = np.where(here, np.nan, values)
@@ -144,7 +164,7 @@ def read_quantities(column: Column) -> tuple[np.ndarray, np.ndarray]:
     default = column.unit or ("money" if attribute.dimension == "money" else "")
     if column.numeric and default:
         values = from_unit(column.floats(), default, attribute.dimension)
-        return _limit(column, values, Origin.READ if default in SI_UNITS else Origin.CONVERTED)
+        return _limit(column, values, Origin.READ if default in SI_UNITS else Origin.CONVERTED, default)
     if column.numeric:
         numbers, units = column.floats(), np.full(len(column), "", dtype=object)
     else:
@@ -163,7 +183,7 @@ def read_quantities(column: Column) -> tuple[np.ndarray, np.ndarray]:
         if unit in SI_UNITS:
             origin[here] = Origin.READ
     column.note("unit_unknown", Severity.DOUBTS, left, f"a bare number, and no unit makes it a usual {attribute.label.lower()}", "cell not used; write the unit in the heading or the cell")
-    return _limit(column, values, origin)
+    return _limit(column, values, origin, units)
 
 
 def _distinct(units: np.ndarray) -> list[str]:

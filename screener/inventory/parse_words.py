@@ -19,6 +19,8 @@ CLEARLY = 0.05
 LOOKED_AT = 2_000
 """Distinct cells of a column that are compared by likeness; beyond them only wording counts."""
 DENIALS = frozenset("not no non un without never ex removed missing lacking isnt isn't instead former".split())
+_DECIMAL, _LOOSE_DOT, _OTHER = re.compile(r"(?<=\d),(?=\d)"), re.compile(r"\.(?!\d)|(?<!\d)\."), re.compile(r"[^0-9a-z?#+.]+")
+_BETWEEN = re.compile(r"[^0-9a-z?#+.']+")
 GRADES = frozenset({"gr", "grade", "gd"})
 BY_PART = "by a part of the text"
 NAMES_NOT_MISSING = frozenset({"x", "nd", "na", "."})
@@ -26,8 +28,8 @@ NAMES_NOT_MISSING = frozenset({"x", "nd", "na", "."})
 
 def compact(text: str) -> str:
     """A wording for comparison: lower case, letters, digits and a few signs only; a dot stays between digits."""
-    text = re.sub(r"(?<=\d),(?=\d)", ".", text.lower())
-    return re.sub(r"\.(?!\d)|(?<!\d)\.", "", re.sub(r"[^0-9a-z?#+.]+", "", text))
+    text = _DECIMAL.sub(".", text.lower())
+    return _LOOSE_DOT.sub("", _OTHER.sub("", text))
 
 
 def _signature(text: str) -> tuple:
@@ -79,21 +81,26 @@ def read_category(text: str, attribute: Attribute, likeness: bool = True) -> tup
 
 def _inside(text: str, words: dict[str, str]) -> tuple[list[str], bool, bool]:
     """(choices whose wording stands in the text, longest first and not overlapping; whether what is left denies; whether it names a grade)."""
-    text = re.sub(r"(?<=\d),(?=\d)", ".", text)
-    tokens = [t for t in re.split(r"[^0-9a-z?#+.']+", text) if t.strip(".'")]
+    text = _DECIMAL.sub(".", text)
+    tokens = [t for t in map(compact, _BETWEEN.split(text)) if t]
     taken = [False] * len(tokens)
     found = []
     for length in range(min(6, len(tokens)), 0, -1):
         for start in range(len(tokens) - length + 1):
-            piece = compact("".join(tokens[start : start + length]))
-            if len(piece) > 1 and piece in words and piece not in DENIALS and not any(taken[start : start + length]):
+            piece = "".join(tokens[start : start + length])
+            if len(piece) > 1 and piece in words and _says(piece, tokens) and not any(taken[start : start + length]):
                 taken[start : start + length] = [True] * length
                 found.append(words[piece])
-    left = [compact(token) for token, used in zip(tokens, taken, strict=True) if not used]
+    left = [token for token, used in zip(tokens, taken, strict=True) if not used]
     if found:
         found += [words[token] for token in left if len(token) == 1 and token in words and token not in "yn?"]
     graded = any(token in GRADES and any(c.isdigit() for c in after) for token, after in zip(left, left[1:], strict=False))
     return found, any(token in DENIALS for token in left), graded
+
+
+def _says(piece: str, tokens: list[str]) -> bool:
+    """Whether a wording inside a text says enough; a bare number needs a text of hardly more than itself."""
+    return piece not in DENIALS and not (piece.isdigit() and len(tokens) > 2)
 
 
 def _alike(text: str, words: dict[str, str], signatures: dict[str, tuple]) -> str | None:

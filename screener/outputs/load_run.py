@@ -42,7 +42,7 @@ def load_joints(folder: str | Path, joints: list[str]) -> LoadedJoints:
     record = read_run(folder)
     settings = Settings(**{k: v for k, v in record["settings"].items() if k != "assessment_year"})
     path = folder / "joints.parquet"
-    ids = pyarrow.parquet.read_table(path, columns=["shown_id"]).column("shown_id").to_pandas()
+    ids = pyarrow.parquet.read_table(path, columns=["shown_id"]).column("shown_id").to_pandas().astype(object)
     place = pd.Series(np.arange(len(ids)), index=ids)
     unknown = [joint for joint in joints if joint not in place.index]
     if unknown:
@@ -51,6 +51,9 @@ def load_joints(folder: str | Path, joints: list[str]) -> LoadedJoints:
         raise ModelError(f"{folder}: joint {unknown[0]!r} is not in this run{hint}")
     rows = place.loc[joints].to_numpy()
     values = pyarrow.parquet.read_table(path).take(pyarrow.array(rows)).to_pandas()
+    for name in values.columns:
+        if isinstance(values[name].dtype, pd.CategoricalDtype):
+            values[name] = values[name].astype(object)
     numbers = values["row"].tolist()
     ranking = _lines(folder / "ranking.csv", numbers)
     for joint, row in zip(joints, ranking.to_dict("records"), strict=True):
@@ -73,7 +76,7 @@ def fleet_of(values: pd.DataFrame, joints: list[str], record: dict, settings: Se
     known = inventory_attributes()
     count = len(values)
     names = [c for c in values.columns if f"{c}__origin" in values.columns]
-    given = {n: values[n].to_numpy(dtype=object) if values[n].dtype == object or values[n].dtype.kind == "O" or isinstance(values[n].dtype, pd.StringDtype) else values[n].to_numpy(dtype=float) for n in names}
+    given = {n: values[n].to_numpy(dtype=float if values[n].dtype.kind == "f" else object) for n in names}
     gaps = Gaps({n: given[n] for n in names if n in known and n != "leak_dates"}, {n: values[f"{n}__origin"].to_numpy() for n in names}, count, Ledger())
     for name in names:
         if name not in known:

@@ -29,7 +29,7 @@ def layer_frame(screening: Screening) -> tuple[geopandas.GeoDataFrame, pd.DataFr
             name += "_"
         taken.add(name.lower())
         own[name] = _plain(inventory.raw.cells.iloc[:, k]).iloc[position].reset_index(drop=True)
-    frame = pd.concat([ranking.reset_index(drop=True), pd.DataFrame(own)], axis=1)
+    frame = ranking.assign(**own)
     x, y = inventory.place
     if x is None:
         x = y = np.full(len(inventory), np.nan)

@@ -20,7 +20,7 @@ from screener.outputs.run_folder import file_hash, make_folder, whole_file, writ
 from screener.outputs.shown import CAUTIONS
 from screener.outputs.summary import summarize
 from screener.priority.ranking import assumption_frames
-from screener.screening import Screening, as_series
+from screener.screening import Screening
 
 WORKBOOK_ROWS = 250_000
 LAYER_ROWS = 250_000
@@ -49,7 +49,7 @@ def write_run(
     progress("writing joints.parquet")
     paths["values"] = folder / "joints.parquet"
     with whole_file(paths["values"]) as temporary:
-        run_values(screening).to_parquet(temporary, index=False)
+        pyarrow.parquet.write_table(run_values(screening), temporary, write_statistics=False)
     if screening.inventory.sections:
         paths["sections"] = folder / "ring_sections.csv"
         write_csv(section_frame(screening.inventory.sections), paths["sections"])
@@ -94,19 +94,27 @@ def write_assumptions(screening: Screening, path: Path) -> int:
     return lines
 
 
-def run_values(screening: Screening) -> pd.DataFrame:
+def run_values(screening: Screening) -> pyarrow.Table:
     """Every attribute of every row, SI, with its origin code and the cell as written; what later commands read."""
     gaps = screening.inventory.gaps
-    parts = {"position": np.arange(len(screening.inventory)), "row": screening.inventory.raw.row_numbers, "shown_id": screening.inventory.joint_id}
+    inventory = screening.inventory
+    parts = {"position": pyarrow.array(np.arange(len(inventory))), "row": pyarrow.array(inventory.raw.row_numbers), "shown_id": arrow_text(inventory.joint_id)}
     for name in gaps.values:
         values = gaps[name]
         if name == "leak_dates":
             values = np.array(["; ".join(f"{d:.3f}" for d in v) if isinstance(v, tuple) else None for v in values], dtype=object)
-        parts[name] = values
-        parts[f"{name}__origin"] = gaps.origin(name)
-        if name in screening.inventory.match.columns:
-            parts[f"{name}__written"] = screening.inventory.as_written(name)
-    return pd.DataFrame({name: as_series(values) for name, values in parts.items()})
+        parts[name] = pyarrow.array(values, from_pandas=True) if values.dtype.kind == "f" else arrow_text(values)
+        parts[f"{name}__origin"] = pyarrow.array(gaps.origin(name))
+        if name in inventory.match.columns:
+            parts[f"{name}__written"] = arrow_text(inventory.as_written(name))
+    return pyarrow.table(parts)
+
+
+def arrow_text(values) -> pyarrow.Array:
+    """Text cells as an Arrow column that holds each distinct text once."""
+    code, unique = pd.factorize(values)
+    words = pyarrow.array([str(v) for v in unique], type=pyarrow.string())
+    return pyarrow.DictionaryArray.from_arrays(pyarrow.array(code.astype(np.int32), mask=code < 0), words)
 
 
 def section_frame(sections: dict[str, np.ndarray]) -> pd.DataFrame:
@@ -147,9 +155,7 @@ def write_csv(frame: pd.DataFrame, path: Path) -> None:
         elif values.dtype.kind in "iub" or isinstance(values.dtype, pd.Int64Dtype):
             columns[name] = pyarrow.Array.from_pandas(values)
         else:
-            code, unique = pd.factorize(values)
-            words = pyarrow.array([*(str(v) for v in unique), None], type=pyarrow.string())
-            columns[name] = words.take(pyarrow.array(np.where(code < 0, len(unique), code)))
+            columns[name] = arrow_text(values).dictionary_decode()
     with whole_file(path) as temporary:
         options = pyarrow.csv.WriteOptions(quoting_style="needed", quoting_header="needed")
         pyarrow.csv.write_csv(pyarrow.table(columns), temporary, options)

@@ -80,6 +80,9 @@ _SPELLED["stress"] = {unit: words for unit, words in _SPELLED["pressure"].items(
 _SPELLED["stress"]["psi"] = "psi|lb/in2|lbf/in2|lbs/in2|lb/sqin|lbf/sqin"
 SPELLINGS = {dimension: {word: unit for unit, words in units.items() for word in words.split("|")} for dimension, units in _SPELLED.items()}
 
+LONGEST = 40
+_ALIKE = str.maketrans({"º": "°", "˚": "°", "″": '"', "”": '"', "′": "'", "’": "'", "·": None, "⋅": None, "•": None})
+
 # Machine suffixes are units too.
 MACHINE = {
     "kpa": ("pressure", "kPa"), "mpa": ("pressure", "MPa"), "mm": ("length", "mm"), "m": ("length", "m"), "kn": ("force", "kN"), "nm": ("torque", "N m"),
@@ -123,9 +126,10 @@ def find_unit(text: str, dimension: str) -> str | None:
     """The unit that a spelling means in a dimension, or None."""
     if dimension not in SPELLINGS:
         return None
-    word = text.replace("º", "°").replace("˚", "°").replace("″", '"').replace("′", "'").replace("”", '"').replace("’", "'")
-    word = unicodedata.normalize("NFKC", word).lower().replace("²", "2").replace("^2", "2").replace("·", "").replace("⋅", "").replace("•", "")
-    word = "".join(word.split())
+    if len(text) > LONGEST:
+        return None
+    word = text if text.isascii() else unicodedata.normalize("NFKC", text.translate(_ALIKE))
+    word = "".join(word.lower().replace("^2", "2").split())
     spelled = SPELLINGS[dimension]
     for candidate in (word, word.replace(".", "")):
         if candidate in spelled:
