@@ -109,23 +109,31 @@ def _note_currencies(column: Column) -> None:
 
 
 def _slips(attribute: Attribute, values: np.ndarray, suspect: np.ndarray, units: np.ndarray | str):
-    """(unit, mask) of impossible SI values whose number would be usual in another unit than the one it was taken in."""
+    """(why in words, mask) of impossible SI values whose number would be usual in another unit, or with a decimal point."""
     usual = USUAL.get(attribute.name)
     if usual is None or attribute.dimension.startswith("temperature") or not suspect.any():
         return
     places = np.flatnonzero(suspect)
     written = np.broadcast_to(np.asarray(units, dtype=object), values.shape)[places]
     left = np.ones(len(places), dtype=bool)
+
+    def taken(here: np.ndarray) -> np.ndarray:
+        left[here] = False
+        mask = np.zeros(len(values), dtype=bool)
+        mask[places[here]] = True
+        return mask
+
     for meant in CANDIDATES.get(attribute.dimension, ()):
         for unit in _distinct(written[left & (written != meant)]):
             here = left & (written == unit)
             moved = from_unit(to_unit(values[places], unit, attribute.dimension), meant, attribute.dimension)
             here &= (moved >= usual[0]) & (moved <= usual[1])
             if here.any():
-                left &= ~here
-                mask = np.zeros(len(values), dtype=bool)
-                mask[places[here]] = True
-                yield meant, mask
+                yield f"it would be usual in {meant}, so perhaps the unit is wrong", taken(here)
+    for share, words in ((10, "a tenth"), (100, "a hundredth"), (1000, "a thousandth")):
+        here = left & (values[places] / share >= usual[0]) & (values[places] / share <= usual[1])
+        if here.any():
+            yield f"{words} of it would be usual, so perhaps a decimal point is missing", taken(here)
 
 
 def _limit(column: Column, values: np.ndarray, origin: np.ndarray | Origin, units: np.ndarray | str = "") -> tuple[np.ndarray, np.ndarray]:
@@ -137,8 +145,8 @@ def _limit(column: Column, values: np.ndarray, origin: np.ndarray | Origin, unit
     if attribute.possible:
         low, high = attribute.possible
         out = (values < low * (1 - 1e-9) - 1e-12) | (values > high * (1 + 1e-9) + 1e-12)
-        for unit, here in _slips(attribute, values, out, units):
-            column.note("unit_slip", Severity.DOUBTS, here, f"not possible for {attribute.label.lower()}; it would be usual in {unit}, so perhaps the unit is wrong", "cell not used")
+        for why, here in _slips(attribute, values, out, units):
+            column.note("unit_slip", Severity.DOUBTS, here, f"not possible for {attribute.label.lower()}; {why}", "cell not used")
             out &= ~here
             values = np.where(here, np.nan, values)
         column.note("out_of_range", Severity.DOUBTS, out | infinite, f"not possible for {attribute.label.lower()}; accepted: {_span(attribute, low, high)}", "cell not used")

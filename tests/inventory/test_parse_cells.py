@@ -106,7 +106,10 @@ def test_a_likely_slip_is_named_and_not_used():
     (said,) = p.findings("unit_slip")
     assert said.values.tolist() == ["300"] and "mm" in said.problem and said.severity == Severity.DOUBTS
     p = Parsed("operating_pressure", ["1 500 psi"])
-    assert np.isnan(p.values[0]) and "kPa" in p.findings("unit_slip")[0].problem
+    assert np.isnan(p.values[0]) and "usual in kPa" in p.findings("unit_slip")[0].problem
+    p = Parsed("operating_pressure", ["15000 psi"])
+    assert np.isnan(p.values[0]) and "a hundredth of it would be usual" in p.findings("unit_slip")[0].problem
+    assert Parsed("operating_pressure", ["-100 psi"]).codes == {"out_of_range"}
 
 
 def test_impossible_is_not_used_and_unusual_is_used_and_doubted():
