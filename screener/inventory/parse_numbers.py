@@ -8,10 +8,10 @@ import re
 import numpy as np
 
 from screener.columns import Attribute
-from screener.inventory.bare_numbers import CANDIDATES, USUAL, decide_units
+from screener.inventory.bare_numbers import CANDIDATES, STRAYS, USUAL, decide_units
 from screener.inventory.parse_column import Column
 from screener.records import Origin, Severity
-from screener.units import accepted, from_unit, read_quantity, separators_in, show, to_unit
+from screener.units import UNITS, accepted, from_unit, read_quantity, separators_in, show, to_unit
 
 SI_UNITS = ("m", "Pa", "N m", "C", "K", "rad", "money")
 # "150#" on a ring's paper is the class 150 of its drilling; such a ring is not rated 150 psi by that name.
@@ -180,7 +180,7 @@ def read_quantities(column: Column) -> tuple[np.ndarray, np.ndarray]:
     known = np.isfinite(numbers)
     bare = known & (units == "")
     if bare.any():
-        units = np.where(bare, default or decide_units(column, numbers, bare), units)
+        units = np.where(bare, default or _units_of_bare(column, numbers, units, bare), units)
     values = np.where(np.isinf(numbers), numbers, np.nan)
     origin = np.full(len(numbers), Origin.CONVERTED, dtype=np.uint8)
     left = known.copy()
@@ -192,6 +192,47 @@ def read_quantities(column: Column) -> tuple[np.ndarray, np.ndarray]:
             origin[here] = Origin.READ
     column.note("unit_unknown", Severity.DOUBTS, left, f"a bare number, and no unit makes it a usual {attribute.label.lower()}", "cell not used; write the unit in the heading or the cell")
     return _limit(column, values, origin, units)
+
+
+def _units_of_bare(column: Column, numbers: np.ndarray, units: np.ndarray, bare: np.ndarray) -> np.ndarray:
+    """A unit per bare number: that of the column's other cells where it suits them all, else decided from their size."""
+    attribute = column.attribute
+    nought = bare & (numbers == 0.0) if attribute.dimension != "temperature" else np.zeros(len(bare), dtype=bool)
+    sized = bare & ~nought
+    made = np.full(len(bare), "", dtype=object)
+    if sized.any():
+        others = _unit_of_others(column, numbers, units, sized)
+        made = np.where(sized, others or decide_units(column, numbers, sized), "")
+        if not others:
+            _note_either(column, numbers, made, sized)
+    made[nought] = next(iter(UNITS[attribute.dimension]))  # nought is nought in any unit
+    return made
+
+
+def _unit_of_others(column: Column, numbers: np.ndarray, units: np.ndarray, sized: np.ndarray) -> str:
+    """The unit that nearly all cells with a unit name, where it makes nearly all bare numbers usual; "" otherwise."""
+    named, counts = np.unique(units[units != ""].astype(str), return_counts=True)
+    usual = USUAL.get(column.attribute.name)
+    if not len(named) or usual is None or counts.max() < 0.9 * counts.sum():
+        return ""
+    unit = str(named[counts.argmax()])
+    moved = from_unit(numbers[sized], unit, column.attribute.dimension)
+    if ((moved >= usual[0]) & (moved <= usual[1])).mean() < 1.0 - STRAYS:
+        return ""
+    column.note_column("unit_taken", Severity.NOTES, f"{int(sized.sum()):,} bare numbers, and the heading names no unit", f"all taken as {unit}, the unit of the column's other cells")
+    return unit
+
+
+def _note_either(column: Column, numbers: np.ndarray, made: np.ndarray, sized: np.ndarray) -> None:
+    """In a column of several units, bare numbers that would be usual in more than one of them."""
+    used = _distinct(made[sized])
+    usual = USUAL.get(column.attribute.name)
+    if len(used) < 2 or usual is None:
+        return
+    moved = np.array([from_unit(numbers, unit, column.attribute.dimension) for unit in used])
+    either = sized & (((moved >= usual[0]) & (moved <= usual[1])).sum(axis=0) > 1)
+    for unit in used:
+        column.note("unit_open", Severity.DOUBTS, either & (made == unit), f"a bare number in a column of {' and '.join(used)} that would be usual in more than one of them", f"taken as {unit}; write the unit in the cell")
 
 
 def _distinct(units: np.ndarray) -> list[str]:

@@ -94,6 +94,26 @@ def test_a_mixed_column_is_decided_value_by_value_and_listed():
     np.testing.assert_allclose(p.values, [150 * PSI, 1e6, 120 * PSI, 8e5, 140 * PSI, 110 * PSI])
 
 
+def test_a_number_that_either_unit_of_a_mixed_column_makes_usual_is_listed():
+    p = Parsed("nominal_size", [12, 63, 315, 16, 24])
+    assert p.rows("unit_open") == [1] and p.findings("unit_open")[0].values.tolist() == ["63"]
+
+
+def test_bare_numbers_follow_the_unit_of_the_other_cells_where_it_suits_them():
+    p = Parsed("assembly_torque", ["110 Nm", "150 Nm", 120, 140])
+    assert p.values == pytest.approx([110, 150, 120, 140])
+    assert [f.severity for f in p.findings("unit_taken")] == [Severity.NOTES]
+    np.testing.assert_allclose(Parsed("nominal_size", ["DN300", 12, 16]).values, [0.3, 12 * IN, 16 * IN])
+
+
+def test_nought_has_no_unit_to_decide():
+    p = Parsed("recurrent_surge", [0, 0, 40, 30, 25])
+    np.testing.assert_allclose(p.values, [0, 0, 40 * PSI, 30 * PSI, 25 * PSI])
+    assert "unit_unknown" not in p.codes and "unit_taken_by_value" not in p.codes
+    assert Parsed("operating_pressure", [0, 0]).values.tolist() == [0, 0]
+    assert Parsed("operating_pressure", [0, 0]).rows("unusual") == [0, 1]
+
+
 def test_a_bare_number_that_no_unit_makes_usual_is_not_used():
     p = Parsed("nominal_size", [12, 16, 24, 123456])
     assert np.isnan(p.values[3]) and p.origin[3] == Origin.MISSING
