@@ -68,9 +68,7 @@ def _parser() -> argparse.ArgumentParser:
     screen.add_argument("--rank-by", choices=("utilization", "likelihood", "expected_loss"), help="what the rank follows")
     screen.add_argument("--date", metavar="YYYY-MM-DD", help="assessment date (default today)")
     screen.add_argument("--seed", type=int, help="seed of the random streams")
-    screen.add_argument("--pressures", metavar="FOLDER", help="pressure logs")
-    screen.add_argument("--stations", metavar="FILE", help="where each logger stands")
-    screen.add_argument("--mains", metavar="LAYER", help="mains as lines (file, or layer of the inventory's GeoPackage)")
+    screen.add_argument("--mains", metavar="LAYER", help="mains as lines for the map: a GIS file, or a layer of the inventory's own file")
     screen.add_argument("--no-workbook", action="store_true", help="leave the workbook out (it is the slow part above 100 000 joints)")
 
     surge = add("surge", "compute a pressure transient on one main")
@@ -161,15 +159,13 @@ def _screen(given, progress) -> int:
     progress("reading and auditing")
     inventory = read_inventory(given.file, settings, mapping=given.mapping, sections=given.sections)
     progress(f"screening {len(inventory.fleet):,} joints")
-    screening = screen(
-        inventory,
-        settings,
-        pressures=given.pressures,
-        stations=given.stations,
-        mains=given.mains,
-        progress=progress,
-    )
-    write_run(screening, given.out, source=given.file, workbook=not given.no_workbook, progress=progress)
+    screening = screen(inventory, settings, progress=progress)
+    mains = None
+    if given.mains:
+        from screener.outputs.mains import read_mains
+
+        mains = read_mains(given.mains, given.file, inventory.crs)
+    write_run(screening, given.out, source=given.file, workbook=not given.no_workbook, mains=mains, progress=progress)
     progress.done()
     if not given.quiet:
         print_summary(screening, given.out)

@@ -84,9 +84,6 @@ def screen(
     inventory: Inventory,
     settings: Settings | None = None,
     *,
-    pressures=None,
-    stations=None,
-    mains=None,
     progress: Callable[[str], None] = lambda words: None,
 ) -> Screening:
     """Rank the joints of an inventory. Every row ends ranked or with a reason."""

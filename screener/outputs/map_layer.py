@@ -11,6 +11,7 @@ import pandas as pd
 import pyogrio
 import shapely
 
+from screener.outputs.map_style import describe_layers
 from screener.outputs.run_folder import whole_file
 from screener.outputs.shown import CAUTIONS
 from screener.screening import Screening
@@ -77,3 +78,4 @@ def write_geopackage(screening: Screening, path: Path, mains: geopandas.GeoDataF
             pyogrio.write_dataframe(placeless, temporary, layer="joints_without_place", driver="GPKG", append=True)
         cautions = pd.DataFrame({"caution": list(CAUTIONS)})
         pyogrio.write_dataframe(cautions, temporary, layer="cautions", driver="GPKG", append=True)
+        describe_layers(temporary)

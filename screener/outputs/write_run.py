@@ -33,6 +33,7 @@ def write_run(
     *,
     source: str | Path,
     workbook: bool = True,
+    mains=None,
     progress: Callable[[str], None] = lambda words: None,
 ) -> dict[str, Path]:
     """Write the run; returns the paths by role."""
@@ -56,7 +57,7 @@ def write_run(
     if len(screening.table) <= LAYER_ROWS:
         progress("writing joints.gpkg")
         paths["layer"] = folder / "joints.gpkg"
-        write_geopackage(screening, paths["layer"])
+        write_geopackage(screening, paths["layer"], mains)
     else:
         progress("writing joints_layer.parquet")
         paths["layer"] = folder / "joints_layer.parquet"
