@@ -12,6 +12,7 @@ from screener.columns import Attribute
 from screener.records import Ledger, Severity
 from screener.units import is_missing_word
 
+PLAIN = r"[-+]?[0-9]{1,15}(?:\.[0-9]{1,15})?"
 MOST_WORDINGS = 30
 """Distinct wordings of one kind of finding in a column; what goes beyond is one finding of its own."""
 
@@ -43,8 +44,15 @@ def written(cells: pd.Series) -> np.ndarray:
     return texts[code]
 
 
+def is_plain(texts: pd.Series) -> np.ndarray:
+    """Which texts are plain numbers, digits with at most a decimal dot, or empty cells."""
+    return (texts.str.fullmatch(PLAIN).to_numpy(dtype=bool, na_value=False)) | texts.isna().to_numpy()
+
+
 def as_numbers(cells: pd.Series) -> pd.Series:
-    """A column of mixed objects as floats where every filled cell is a number, so that no cell is read one by one."""
+    """A column as floats where every filled cell is a number or a plainly written one, so that no cell is read one by one."""
+    if isinstance(cells.dtype, pd.StringDtype):
+        return cells.astype(float) if len(cells) and is_plain(cells).all() else cells
     if cells.dtype != object:
         return cells
     objects = cells.to_numpy()

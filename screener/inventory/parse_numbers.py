@@ -6,12 +6,13 @@ import datetime
 import re
 
 import numpy as np
+import pandas as pd
 
 from screener.columns import Attribute
 from screener.inventory.bare_numbers import CANDIDATES, STRAYS, USUAL, decide_units
-from screener.inventory.parse_column import Column
+from screener.inventory.parse_column import Column, is_plain
 from screener.records import Origin, Severity
-from screener.units import UNITS, accepted, from_unit, read_quantity, separators_in, show, to_unit
+from screener.units import UNITS, accepted, from_unit, is_missing_word, read_quantity, separators_in, show, to_unit
 
 SI_UNITS = ("m", "Pa", "N m", "C", "K", "rad", "money")
 # "150#" on a ring's paper is the class 150 of its drilling; such a ring is not rated 150 psi by that name.
@@ -67,7 +68,7 @@ def _comma_by_range(column: Column, unclear: np.ndarray) -> tuple[bool, Severity
 
 def is_class_name(text: str, attribute: Attribute) -> bool:
     """Whether a text names a class ("150#", "class 150") where a pressure is meant."""
-    if attribute.dimension != "pressure" or attribute.name == "pipe_pressure_class":
+    if attribute.dimension != "pressure" or attribute.name == "pipe_pressure_class" or text[-1:].lower() == "i":
         return False
     name = CLASS_NAME.fullmatch(text.strip())
     return bool(name) and (attribute.name == "stated_rating" or name.group().lower().startswith("cl"))
@@ -88,11 +89,23 @@ def _read_cell(column: Column, value: object, text: str, comma: bool | None) -> 
     return read.number, read.unit or "", read.doubt, read.remark, read.error
 
 
+def _plain_cells(column: Column, comma: bool | None) -> np.ndarray:
+    """Which distinct cells are texts of plain numbers, so that they need no closer look."""
+    if comma or not column.unique:
+        return np.zeros(len(column.unique), dtype=bool)
+    texts = pd.Series([value if isinstance(value, str) else "-" for value in column.unique], dtype="str")
+    return is_plain(texts)
+
+
 def _read_numbers(column: Column) -> tuple[np.ndarray, np.ndarray]:
     """(numbers, unit per row: "" bare) of a column with text in it; unreadable cells noted."""
     comma = decimal_comma_of(column)
     empty = (np.nan, "", "", "", "")
-    reads = [empty if missing else _read_cell(column, value, text, comma) for value, text, missing in zip(column.unique, column.texts, column.missing, strict=True)]
+    plain = _plain_cells(column, comma)
+    reads = [
+        (float(text), "", "", "", "") if simple else empty if is_missing_word(text) else _read_cell(column, value, text, comma)
+        for value, text, simple in zip(column.unique, column.texts, plain, strict=True)
+    ]
     numbers, units, doubts, remarks, errors = (list(part) for part in zip(*reads, strict=True)) if reads else ([], [], [], [], [])
     column.note_each("unreadable", Severity.DOUBTS, errors, "cell not used", accepted(column.attribute.dimension))
     column.note_each("written_loosely", Severity.DOUBTS, doubts, "number used")

@@ -52,7 +52,7 @@ def tidy(text: str) -> str:
 
 def is_missing_word(text: str) -> bool:
     """Whether a cell's text says that there is no value."""
-    if len(text) > 24:
+    if len(text) > 24 or "0" <= text[:1] <= "9":
         return False
     word = text.strip().lower()
     return word in MISSING_WORDS or (not word.isascii() and tidy(text).lower() in MISSING_WORDS)

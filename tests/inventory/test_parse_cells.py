@@ -395,6 +395,19 @@ def test_every_dtype_of_pandas(dtype):
     assert Parsed("joint_id", cells).values.tolist() == ["12", "16"]
 
 
+def test_text_of_plain_numbers_is_read_like_numbers():
+    """Two routes: a column of text read at once, and the same with one cell that needs a closer look."""
+    texts = ["12.5", "-3", "+7.25", "0012", None, "100"]
+    at_once = Parsed("chainage", pd.Series(texts, dtype="str"), unit="ft")
+    closer = Parsed("chainage", pd.Series([*texts, "5 ft"], dtype="str"), unit="ft")
+    objects = Parsed("chainage", [float(t) if t else None for t in texts], unit="ft")
+    np.testing.assert_array_equal(at_once.values, objects.values)
+    np.testing.assert_array_equal(closer.values[:-1], objects.values)
+    assert Parsed("year_installed", pd.Series(["1998", "2004"], dtype="str")).values.tolist() == [1998, 2004]
+    assert Parsed("joint_id", pd.Series(["0012", "1.0"], dtype="str")).values.tolist() == ["0012", "1.0"]
+    assert Parsed("ring_class", pd.Series(["150", None], dtype="str")).values.tolist() == ["150", None]
+
+
 def test_empty_cells_of_every_kind():
     for empty in (None, np.nan, pd.NA, pd.NaT, ""):
         for attribute in ("nominal_size", "bolt_count", "year_installed", "leak_dates", "gasket", "zone", "joint_id"):
