@@ -65,7 +65,6 @@ def _parser() -> argparse.ArgumentParser:
     reading(screen)
     screen.add_argument("--out", metavar="FOLDER", required=True, help="folder of the run")
     screen.add_argument("--safety-factor", type=float, help="safety factor on ring yield (default 2)")
-    screen.add_argument("--rank-by", choices=("utilization", "likelihood", "expected_loss"), help="what the rank follows")
     screen.add_argument("--date", metavar="YYYY-MM-DD", help="assessment date (default today)")
     screen.add_argument("--seed", type=int, help="seed of the random streams")
     screen.add_argument("--mains", metavar="LAYER", help="mains as lines for the map: a GIS file, or a layer of the inventory's own file")

@@ -11,7 +11,7 @@ from pathlib import Path
 from screener.records import InputError
 
 UNIT_SYSTEMS = ("us", "metric")
-RANKINGS = ("utilization", "likelihood", "expected_loss")
+RANKINGS = ("utilization",)
 
 
 @dataclass(frozen=True)
