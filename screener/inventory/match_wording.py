@@ -87,7 +87,7 @@ def vocabulary() -> tuple[dict[str, tuple[str, str]], dict[tuple[str, ...], tupl
     """(wording -> (attribute, what it is), canonical words -> the same); wording that would mean two attributes is left out of the second."""
     exact: dict[str, tuple[str, str]] = {}
     for name, attribute in inventory_attributes().items():
-        for text, what in ((attribute.label, "its label"), (name, "its name"), (attribute.machine_name, "its machine name")):
+        for text, what in ((attribute.machine_name, "its machine name"), (name, "its name"), (attribute.label, "its label")):
             exact[" ".join(words_of(text, keep_brackets=False))] = exact[" ".join(words_of(text))] = (name, what)
     for name, attribute in inventory_attributes().items():
         for text in attribute.synonyms:
@@ -190,7 +190,8 @@ def _meaning(heading: str, name: str, what: str, strength: float, dimension: str
         return None
     unit = unit_in_heading(heading, attribute)
     if unit:
-        return Meaning(name, unit, f"{what}, unit {unit} in the heading", strength + 0.05)
+        said = "a currency" if unit == "money" else f"unit {unit}"
+        return Meaning(name, unit, f"{what}, {said} in the heading", strength + 0.05)
     for word in words_of(heading):
         if word in IMPLIED_UNITS and IMPLIED_UNITS[word][0] == attribute.dimension:
             unit = IMPLIED_UNITS[word][1]
