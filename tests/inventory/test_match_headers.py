@@ -247,10 +247,10 @@ def test_random_cells_never_raise(heading, cells):
     match([("Size", [12] * len(cells)), (f"{heading} x", cells), (heading, cells)])
 
 
-def test_two_thousand_odd_columns_take_a_moment():
-    headings = [f"measure {i} of thing {i % 7}" for i in range(2000)]
+def test_many_odd_columns_take_a_moment():
+    headings = [f"measure {i} of thing {i % 7}" for i in range(400)]
     columns = [("Size", [12, 14]), *((h, [1, 2]) for h in headings)]
     start = time.perf_counter()
     found, _ = match(columns)
-    print(f"{time.perf_counter() - start:.1f} s for 2 000 columns")
+    print(f"{time.perf_counter() - start:.1f} s for 400 columns")
     assert found.columns == {"nominal_size": 0}

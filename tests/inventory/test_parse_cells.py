@@ -426,7 +426,7 @@ CELLS = st.one_of(st.none(), st.integers(), st.floats(), st.text(max_size=20), s
 
 
 @given(st.sampled_from(sorted(inventory_attributes())), st.lists(CELLS, max_size=10), st.booleans())
-@settings(max_examples=600, deadline=None)
+@settings(max_examples=400, deadline=None)
 def test_random_cells_never_raise_and_rows_are_kept(name, cells, with_unit):
     attribute = inventory_attributes()[name]
     p = Parsed(name, cells, unit=attribute.us if with_unit and attribute.dimension else "")
@@ -454,7 +454,7 @@ def test_the_unit_of_the_heading_rescales_and_nothing_else(metres):
 
 
 def test_many_different_complaints_stay_few_findings_and_lose_no_row():
-    n = 20_000
+    n = 5_000
     start = time.perf_counter()
     p = Parsed("operating_pressure", [f"{i} foo{i}" for i in range(n)])
     q = Parsed("ring_material", [f"thing {i} of some kind" for i in range(n)])
