@@ -30,7 +30,7 @@ def fit_modulus_law(duration, modulus) -> ModulusLaw:
     """Power law through a modulus table by least squares of logarithms.
 
     duration [s], modulus [Pa]: the table's rows. Source of the form: the
-    table of PPI Handbook of PE Pipe ch. 3 App. B is straight within about 2 % on double logarithmic paper.
+    table of PPI Handbook of PE Pipe ch. 3 App. B is straight within 2 % (PE4XXX) to 3.2 % (PE2XXX) on double logarithmic paper.
     """
     duration, modulus = np.asarray(duration, dtype=float), np.asarray(modulus, dtype=float)
     slope, intercept = np.polyfit(np.log(duration), np.log(modulus), 1)
