@@ -85,7 +85,10 @@ def assess_limits(fleet: Fleet, safety_factor: float, ledger: Ledger, sections: 
         action="its formula used all the same, less certain",
     )
     _note_unknown(fleet, matrix, by_rating, ledger)
-    opening = operating * clamp.opening_separating_load(clamped.force_now, clamped.load_factor) / separating_load(fleet, operating)
+    # The separating load rises in proportion to pressure from what a cold season alone brings.
+    cold = separating_load(fleet, np.zeros(len(fleet)))
+    per_pressure = separating_load(fleet, np.ones(len(fleet))) - cold
+    opening = (clamp.opening_separating_load(clamped.force_now, clamped.load_factor) - cold) / per_pressure
     details = {
         "ring_utilization": utilization["ring_rating"],
         "loose_ring_rating": rating,
@@ -93,7 +96,7 @@ def assess_limits(fleet: Fleet, safety_factor: float, ledger: Ledger, sections: 
         "loose_ring_rating_long_term": aged_rating,
         "loose_ring_rating_pulled": np.where(by_rating, np.nan, rating / pulled),
         "rating_share": rating / r.stated_rating,
-        "ring_safety_factor": safety_factor * rating / recurrent,
+        "ring_safety_factor": safety_factor * rating / np.where(recurrent > 0, recurrent, np.nan),
         "ring_stress": np.where(by_rating, np.nan, stress),
         "lever_arm": short.lever_arm,
         "ring_rotation": rotation_factor(*holes)
