@@ -58,7 +58,8 @@ def leak_likelihood(joints: JointDoubts, seed: int, samples: int = 0) -> LeakLik
 
     First-order estimates of the three limit states, put together by Ditlevsen's bounds (their middle is the likelihood). Joints for which
     a design point was not found are sampled; with `samples` > 0 all joints are, with that many points around each of the three. On invented
-    joints first-order likelihoods are 0.66 to 1.05 of the sampled ones and rank as they do (rank correlation 0.9998).
+    joints first-order likelihoods are 0.5 to 1.05 of the sampled ones, the less the smaller they are, and rank as they do (rank correlation
+    0.9998).
     """
     if not len(joints):
         none, bare = np.empty(0), np.empty((0, len(Doubt)))

@@ -45,7 +45,7 @@ def sample_around(limit_state: LimitState, centres: np.ndarray, rows: np.ndarray
             repeated = np.repeat(rows[some], samples)
             g = limit_state(points.reshape(-1, quantities), repeated)[0].reshape(points.shape[:2])
             failed = g < 0
-            weighed = np.where(failed, _weight(points, safe), 0.0)
+            weighed = np.where(failed, mixture_weight(points, safe), 0.0)
             # A point at which g is unknown makes the joint's probability unknown.
             weighed = np.where(np.isnan(g), np.nan, weighed)
             mean[some] += weighed.mean(axis=1) / kinds
@@ -55,9 +55,9 @@ def sample_around(limit_state: LimitState, centres: np.ndarray, rows: np.ndarray
     return Sampled(mean + unknown, np.sqrt(variance) + unknown, failures)
 
 
-def _weight(points, centres):
+def mixture_weight(points, centres):
     """Standard normal density over the mixture's at points (j, s, k) for centres (j, m, k)."""
     # ln phi(u - c) - ln phi(u) = c.u - |c|^2 / 2
-    exponent = np.einsum("jsk,jmk->jsm", points, centres) - 0.5 * np.einsum("jmk,jmk->jm", centres, centres)[:, None, :]
+    exponent = np.matmul(points, centres.transpose(0, 2, 1)) - 0.5 * np.square(centres).sum(axis=2)[:, None, :]
     largest = exponent.max(axis=2)
     return np.exp(-largest) / np.exp(exponent - largest[:, :, None]).mean(axis=2)
