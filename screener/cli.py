@@ -65,8 +65,11 @@ def _parser() -> argparse.ArgumentParser:
     reading(screen)
     screen.add_argument("--out", metavar="FOLDER", required=True, help="folder of the run")
     screen.add_argument("--safety-factor", type=float, help="safety factor on ring yield (default 2)")
+    screen.add_argument("--rank-by", choices=("utilization", "likelihood", "expected_loss"), help="what the rank follows (default utilization); all three ranks are in the table")
     screen.add_argument("--date", metavar="YYYY-MM-DD", help="assessment date (default today)")
     screen.add_argument("--seed", type=int, help="seed of the random streams")
+    screen.add_argument("--pressures", metavar="FOLDER", help="pressure logs (CSV, Parquet, workbooks); needs --stations")
+    screen.add_argument("--stations", metavar="CSV", help="where each logger stands: main and chainage, or zone, and elevation")
     screen.add_argument("--mains", metavar="LAYER", help="mains as lines for the map: a GIS file, or a layer of the inventory's own file")
     screen.add_argument("--no-workbook", action="store_true", help="leave the workbook out (it is the slow part above 100 000 joints)")
 
@@ -152,11 +155,18 @@ def _check(given, progress) -> int:
 def _screen(given, progress) -> int:
     from screener.inventory.read import read_inventory
     from screener.outputs.write_run import print_summary, write_run
+    from screener.records import InputError
     from screener.screening import screen
 
     settings = _settings(given)
     progress("reading and auditing")
     inventory = read_inventory(given.file, settings, mapping=given.mapping, sections=given.sections)
+    if bool(given.pressures) != bool(given.stations):
+        raise InputError("--pressures and --stations go together: the logs, and where their loggers stand")
+    if given.pressures:
+        from screener.from_logs import with_logs
+
+        inventory = with_logs(inventory, given.pressures, given.stations, progress)
     progress(f"screening {len(inventory.fleet):,} joints")
     screening = screen(inventory, settings, progress=progress)
     mains = None

@@ -218,6 +218,8 @@ class _Columns:
                 parts[item.name] = value.take(rows)
             elif isinstance(value, np.ndarray):
                 parts[item.name] = value[rows]
+            elif isinstance(value, dict):
+                parts[item.name] = {key: some[rows] for key, some in value.items()}
             else:
                 parts[item.name] = value
         return type(self)(**parts)

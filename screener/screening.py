@@ -10,6 +10,8 @@ import pandas as pd
 
 from screener.columns import inventory_attributes, result_columns
 from screener.inventory.read import Inventory
+from screener.likelihood.step import Likelihood, assess_likelihood
+from screener.likelihood.tightness import DOUBT_LABELS
 from screener.limits import assess_limits
 from screener.pressure.step import with_surge_by_formula
 from screener.priority import ranking as order
@@ -60,6 +62,7 @@ class Screening:
     settings: Settings
     fleet: Fleet
     limits: LimitStates
+    likelihood: Likelihood
     table: pd.DataFrame
     findings: pd.DataFrame
 
@@ -96,22 +99,36 @@ def screen(
     )
     progress(f"limit states of {len(fleet):,} joints")
     limits = assess_limits(fleet, settings.safety_factor, inventory.ledger, inventory.sections, settings.horizon_years)
+    progress(f"likelihood of {len(fleet):,} joints")
+    likelihood = assess_likelihood(fleet, limits, settings.seed, sections=inventory.sections)
     progress("ranking")
-    table = result_table(inventory, fleet, limits)
+    table = result_table(inventory, fleet, limits, likelihood, settings.rank_by)
     rows = inventory.raw.row_numbers
     findings = order.findings_frame(inventory.ledger, rows, inventory.joint_id, inventory.raw.sheet, inventory.column_of)
     table["doubts"] = _count_by_row(findings, table["position"], Severity.DOUBTS)
-    return Screening(inventory, settings, fleet, limits, table, findings)
+    return Screening(inventory, settings, fleet, limits, likelihood, table, findings)
 
 
-def result_table(inventory: Inventory, fleet: Fleet, limits: LimitStates) -> pd.DataFrame:
+NO_SCORE = {
+    "utilization": "no limit state could be evaluated",
+    "likelihood": "the likelihood of a leak can't be estimated: an input is unknown",
+    "expected_loss": "the expected loss can't be estimated: no cost of a leak, or an input is unknown",
+}
+
+
+def result_table(inventory: Inventory, fleet: Fleet, limits: LimitStates, likelihood: Likelihood, rank_by: str) -> pd.DataFrame:
     """Every row of the inventory, ranked ones first in order, SI."""
     count = len(inventory)
     at = fleet.position
-    utilization = np.full(count, np.nan)
-    utilization[at] = limits.utilization[np.arange(len(fleet)), limits.governing] if len(fleet) else 0.0
-    rank = order.rank(utilization, inventory.joint_id)
-    reason = np.where((inventory.reason == "") & np.isnan(rank), "no limit state could be evaluated", inventory.reason)
+    scores = {
+        "utilization": _spread(limits.utilization[np.arange(len(fleet)), limits.governing] if len(fleet) else np.empty(0), at, count),
+        "likelihood": _spread(likelihood.likelihood, at, count),
+    }
+    utilization = scores["utilization"]
+    scores["expected_loss"] = scores["likelihood"] * inventory.gaps["consequence_cost"]
+    ranks = {name: order.rank(score, inventory.joint_id) for name, score in scores.items()}
+    rank = ranks[rank_by]
+    reason = np.where((inventory.reason == "") & np.isnan(rank), NO_SCORE[rank_by], inventory.reason)
     governing = np.full(count, None, dtype=object)
     governing[at] = np.array(limits.names, dtype=object)[limits.governing]
     parts: dict[str, np.ndarray] = {
@@ -125,6 +142,14 @@ def result_table(inventory: Inventory, fleet: Fleet, limits: LimitStates) -> pd.
     for name in result_columns():
         if name in limits.details:
             parts[name] = _spread(limits.details[name], at, count)
+    parts["likelihood"] = scores["likelihood"]
+    parts["likelihood_low"] = _spread(likelihood.low, at, count)
+    parts["likelihood_high"] = _spread(likelihood.high, at, count)
+    doubts = np.array([*DOUBT_LABELS, None], dtype=object)
+    parts["main_doubt"] = _spread(doubts[likelihood.most_doubt], at, count)
+    parts["expected_loss"] = scores["expected_loss"]
+    for name, values in ranks.items():
+        parts[f"rank_by_{name}"] = values
     for k, name in enumerate(limits.names):
         parts[f"utilization_{name}"] = _spread(limits.utilization[:, k], at, count)
     parts["assumed_inputs"] = sum(
@@ -153,7 +178,7 @@ def with_units(table: pd.DataFrame) -> pd.DataFrame:
         else:
             parts[column.machine_name] = to_unit(table[name].to_numpy(dtype=float), column.unit)
     frame = pd.DataFrame({name: as_series(values) for name, values in parts.items()})
-    for name in ("rank", "row", "assumed_inputs", "doubts"):
+    for name in ("rank", "rank_by_utilization", "rank_by_likelihood", "rank_by_expected_loss", "row", "assumed_inputs", "doubts"):
         if name in frame:
             frame[name] = frame[name].astype("Int64")
     return frame

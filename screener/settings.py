@@ -11,7 +11,7 @@ from pathlib import Path
 from screener.records import InputError
 
 UNIT_SYSTEMS = ("us", "metric")
-RANKINGS = ("utilization",)
+RANKINGS = ("utilization", "likelihood", "expected_loss")
 
 
 @dataclass(frozen=True)

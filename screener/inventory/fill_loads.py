@@ -101,3 +101,17 @@ def fill_cycles(gaps: Gaps, settings: Settings) -> None:
         source=PRACTICE,
         scatter=0.4,
     )
+
+
+def fill_consequence(gaps: Gaps) -> None:
+    """A missing cost of a leak: the zone's median, else the inventory's; none where no joint has one."""
+    gaps.fill(
+        "consequence_cost",
+        gaps.group_median("consequence_cost", "zone"),
+        rule="median cost of joints in the same zone",
+        source="this inventory",
+        scatter=0.6,
+    )
+    known = gaps["consequence_cost"][gaps.is_read("consequence_cost")]
+    if len(known):
+        gaps.fill("consequence_cost", np.median(known), rule="median cost of the whole inventory", source="this inventory", scatter=0.8)

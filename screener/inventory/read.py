@@ -139,6 +139,7 @@ def fill_gaps(gaps: Gaps, settings: Settings, column_of, as_written, blocked: di
     fill_loads.fill_operating_pressure(gaps, settings)
     fill_loads.fill_surge_from_neighbours(gaps)
     fill_loads.fill_cycles(gaps, settings)
+    fill_loads.fill_consequence(gaps)
 
 
 def _first_reason(blocked: dict[str, np.ndarray], rows: int) -> np.ndarray:

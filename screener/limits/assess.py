@@ -110,6 +110,8 @@ def assess_limits(fleet: Fleet, safety_factor: float, ledger: Ledger, sections: 
         "face_stress": clamp.face_force(clamped.force_now, separating_load(fleet, operating), clamped.load_factor) / face.contact_area,
         "ring_damage": np.where(by_rating, np.nan, sums.ring_to_date),
         "bolt_damage": sums.bolts_to_date,
+        "ring_collapse_load": short.plastic_load,
+        "load_factor": clamped.load_factor,
         "pipe_rating": pipe_rating,
         "design_pressure": recurrent,
     }

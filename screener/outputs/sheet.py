@@ -16,6 +16,8 @@ import pandas as pd
 
 from screener import limits
 from screener.columns import inventory_attributes
+from screener.likelihood.explain import explain
+from screener.likelihood.step import assess_likelihood
 from screener.limit_names import LIMIT_STATES
 from screener.mechanics.bolt_holes import bore_stress_factor
 from screener.outputs.calculation import METRIC, US, calculation_steps
@@ -111,6 +113,8 @@ def sheet_html(loaded: LoadedJoints, i: int) -> str:
         "<h2>Calculation</h2><p>Each line can be redone by hand: formula, numbers, result, source. "
         f"Lengths {u.length}, forces {u.force}, stresses and pressures {u.stress}.</p>",
         _steps(loaded, i, system),
+        "<h2>Likelihood of a leak</h2>",
+        "".join(f"<p>{E(line)}</p>" for line in _likelihood(loaded, i)),
         "<h2>What would change the verdict</h2>",
         _changes(loaded, i),
         "<h2>Inputs and where each comes from</h2>",
@@ -224,6 +228,13 @@ def _changes(loaded: LoadedJoints, i: int) -> str:
         value, label = _utilization(fleet, factor, loaded.sections, loaded.settings.horizon_years)
         lines.append(f"<tr><td>{E(words)}</td><td class='n'>{value:.2f}</td><td>{E(label)}</td></tr>")
     return f"<table><tr><th>If</th><th>Utilization</th><th>Governed by</th></tr>{''.join(lines)}</table>"
+
+
+def _likelihood(loaded: LoadedJoints, i: int) -> list[str]:
+    """The likelihood's own story of one joint."""
+    one = loaded.fleet.take(np.array([i]))
+    found = limits.assess_limits(one, loaded.settings.safety_factor, Ledger(), loaded.sections, loaded.settings.horizon_years)
+    return explain(assess_likelihood(one, found, loaded.settings.seed, sections=loaded.sections), 0)
 
 
 def _utilization(fleet: Fleet, factor: float, sections: dict, horizon: float) -> tuple[float, str]:

@@ -26,8 +26,9 @@ MAY_USE = {
     "likelihood": {"records", "limits", "mechanics"},
     "priority": {"records", "columns", "likelihood", "limits", "mechanics"},
     "screening": FOUNDATION | {"inventory", "standards", "mechanics", "pressure", "fatigue", "limits", "limit_names", "likelihood", "priority"},
+    "from_logs": FOUNDATION | {"inventory", "pressure"},
     "outputs": FOUNDATION | {"inventory", "standards", "mechanics", "pressure", "fatigue", "limits", "limit_names", "likelihood", "priority", "screening"},
-    "cli": {"records", "settings", "screening", "outputs", "inventory", "pressure"},
+    "cli": {"records", "settings", "screening", "from_logs", "outputs", "inventory", "pressure"},
     "__main__": {"cli"},
     "__init__": set(),
 }

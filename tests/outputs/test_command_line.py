@@ -139,3 +139,34 @@ def test_safety_factor_scales_the_rating(tmp_path):
         assert run("screen", SAMPLE / "small_clean.csv", "--out", tmp_path / factor, "--safety-factor", factor, "--quiet").returncode == 0
     one, two = (pd.read_csv(tmp_path / f / "ranking.csv").set_index("joint_id")["loose_ring_rating_kpa"] for f in ("1", "2"))
     assert (one / two.loc[one.index] - 2.0).abs().max() < 1e-5
+
+
+def test_logs_fill_what_the_file_leaves_open_and_nothing_else(tmp_path):
+    logs = ("--pressures", SAMPLE / "loggers", "--stations", SAMPLE / "stations.csv")
+    assert run("screen", SAMPLE / "inventory.xlsx", "--out", tmp_path, "--quiet", "--date", "2026-06-30", *logs).returncode == 0
+    lines = pd.read_parquet(tmp_path / "assumptions.parquet")
+    logged = lines[lines["rule"].astype(str).str.startswith("from loggers")]
+    assert set(logged["attribute"].astype(str)) == {"operating_pressure", "recurrent_surge", "occasional_surge", "cycles_per_day", "cycle_range"}
+    values = pd.read_parquet(tmp_path / "joints.parquet").set_index("row")
+    some = logged[logged["attribute"] == "operating_pressure"]
+    assert values.loc[some["row"], "operating_pressure__written"].isna().mean() > 0.9  # nothing readable stood there
+    upland = values[(values["zone"].astype(str) == "Upland") & values["cycles_per_day__origin"].eq(4)]
+    assert upland["cycles_per_day"].median() > 100  # the pumped zone's loggers see hundreds of cycles a day
+
+
+def test_logs_need_their_stations(tmp_path):
+    done = run("screen", SAMPLE / "small_clean.csv", "--out", tmp_path, "--pressures", SAMPLE / "loggers")
+    assert done.returncode == 2 and "go together" in done.stderr
+
+
+@pytest.mark.parametrize("ranking", ["likelihood", "expected_loss"])
+def test_other_rankings(tmp_path, ranking):
+    assert run("screen", SAMPLE / "inventory.xlsx", "--out", tmp_path, "--rank-by", ranking, "--quiet").returncode == 0
+    table = pd.read_csv(tmp_path / "ranking.csv")
+    ranked = table.query("status == 'ranked'")
+    score = "expected_loss" if ranking == "expected_loss" else "likelihood"
+    assert ranked[score].is_monotonic_decreasing
+    assert ranked["rank"].tolist() == ranked[f"rank_by_{ranking}"].tolist()
+    assert (table["status"] == "ranked").sum() + (table["status"] == "not ranked").sum() == len(table)
+    assert ranked["likelihood"].between(0, 1).all()
+    assert (ranked["likelihood_low"] <= ranked["likelihood"] + 1e-12).all() and (ranked["likelihood"] <= ranked["likelihood_high"] + 1e-12).all()
