@@ -31,8 +31,8 @@ def explain(likelihood: Likelihood, i: int) -> list[str]:
         return ["The likelihood of a leak is not estimated: one of its inputs is unknown."]
     one = likelihood.take(np.array([i]))
     sentences = [
-        f"Chance of a leak in a year: {odds(likelihood.likelihood[i])} "
-        f"({METHOD_WORDS[Method(int(leak.method[i]))]}; relative to other joints unless calibrated with leak records)."
+        f"Relative likelihood of a leak in a year: {odds(likelihood.likelihood[i])} "
+        f"({METHOD_WORDS[Method(int(leak.method[i]))]}; it orders joints and is not a rate, as no leak records stand behind it)."
     ]
     if np.isfinite(leak.alpha2[i]).all():
         sentences += [_doubt(leak.alpha2[i]), _story(one)]
@@ -118,4 +118,4 @@ def _change(one: Likelihood):
     best = min(after, key=lambda words: after[words])
     if not after[best] < 0.98 * before:
         return "No single change by a fifth would make it noticeably less likely."
-    return f"What would change it most: {best}; the chance would go from {odds(before)} to {odds(after[best])}."
+    return f"What would change it most: {best}; the relative likelihood would go from {odds(before)} to {odds(after[best])}."
