@@ -9,6 +9,7 @@ import numpy as np
 from screener.likelihood.leak import METHOD_WORDS, Method, leak_likelihood
 from screener.likelihood.step import Likelihood
 from screener.likelihood.tightness import DOUBT_LABELS, Doubt, HeldBy, assembly_clamps, kept_share
+from screener.likelihood.years import YearsLikelihood
 
 PASCAL_PER_BAR = 1.0e5
 PASCAL_PER_PSI = 6894.757
@@ -16,6 +17,8 @@ NOTICEABLE = 0.05
 """Share of the doubt from which a quantity belongs in the story."""
 CHANGE = 0.2
 """Relative improvement by which the possible measures are compared."""
+CONTRADICTION = 0.01
+"""Chance of the record under the estimates below which the two are said to contradict each other."""
 
 HELD_WORDS = {
     HeldBy.TORQUE: "set by the torque",
@@ -38,6 +41,19 @@ def explain(likelihood: Likelihood, i: int) -> list[str]:
         sentences += [_doubt(leak.alpha2[i]), _story(one)]
     sentences.append(_change(one))
     return sentences
+
+
+def explain_record(years: YearsLikelihood, i: int, leak_free_years: float, horizon_years: float) -> str:
+    """What joint `i`'s own record makes of its likelihood, in one or two sentences."""
+    if not np.isfinite(years.annual[i]):
+        return "What its record says of this joint is not estimated: an input is unknown, or the estimates rule the record out."
+    said = (
+        f"After {leak_free_years:.0f} leak-free years the chance of a leak is {odds(years.annual[i])} in the coming year and "
+        f"{odds(years.within[i])} within {horizon_years:.0f} years."
+    )
+    if years.survival[i] < CONTRADICTION:
+        said += f" The estimates gave this record a chance of only {odds(years.survival[i])}: the joint is likely not what its row says."
+    return said
 
 
 def odds(chance: float) -> str:

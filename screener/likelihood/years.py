@@ -26,7 +26,7 @@ SAMPLES = 100
 @dataclass(frozen=True, eq=False)
 class YearsLikelihood(_Columns):
     """annual: chance of a leak in the coming year given the leak-free years [-]; within: in the coming years of the horizon; their standard
-    errors; survival: chance that the estimates gave to the leak-free years. Arrays (n,), NaN where an input is unknown or no draw survives."""
+    errors; survival: chance that the estimates gave to the record. Arrays (n,), NaN where an input is unknown or no draw survives."""
 
     annual: np.ndarray
     within: np.ndarray
@@ -35,16 +35,22 @@ class YearsLikelihood(_Columns):
     survival: np.ndarray
 
 
-def likelihood_over_years(joints: JointDoubts, leak_free_years, horizon_years: float, seed: int, samples: int = SAMPLES) -> YearsLikelihood:
-    """Chance of a leak in the coming year and over the horizon, given `leak_free_years` (n,) without one: `YearsLikelihood`.
+def likelihood_over_years(
+    joints: JointDoubts, leak_free_years, horizon_years: float, seed: int, samples: int = SAMPLES, *, leaky_years=0.0
+) -> YearsLikelihood:
+    """Chance of a leak in the coming year and over the horizon, given the joint's record: `YearsLikelihood`.
+
+    leak_free_years (n,): years without a leak since the last leak, re-tightening or installation; leaky_years (n,): years before that in
+    which it leaked at least once, 0 where it never did.
 
     Averages over what does not change (importance sampling around origin and design points, one set of random numbers for all joints) of
-    p (1 - p)^T, 1 - (1 - p)^h and (1 - p)^T, where p, the chance in one year, is in closed form. Today's clamp is taken for the past years
-    too; it was higher then, so a leak-free past is believed somewhat too much in the first years after tightening. Leak-free years must be
-    counted from the last time the joint leaked, was taken apart or tightened.
+    p, 1 - (1 - p)^h and the record's likelihood (1 - p)^T (1 - (1 - p)^U), where p, the chance in one year, is in closed form, T the leak-free
+    and U the leaky years. Today's clamp is taken for the past too: it was higher in the first years after tightening, so that a leak-free past
+    is believed somewhat too much, and a repair is taken to restore the joint to what it was, neither better nor worse.
     """
     years = np.broadcast_to(np.asarray(leak_free_years, dtype=float), (len(joints),))
-    years = np.where(years >= 0, years, np.nan)
+    leaky = np.broadcast_to(np.asarray(leaky_years, dtype=float), (len(joints),))
+    years, leaky = np.where(years >= 0, years, np.nan), np.where(leaky >= 0, leaky, np.nan)
     if horizon_years < 0:
         raise ModelError("the horizon must be zero or more years")
     draws = np.random.default_rng(seed).standard_normal((samples, len(Doubt)))
@@ -55,7 +61,7 @@ def likelihood_over_years(joints: JointDoubts, leak_free_years, horizon_years: f
     for group in (np.flatnonzero(joints.pull_per_cooling == 0), np.flatnonzero(joints.pull_per_cooling != 0)):
         for begin in range(0, len(group), at_once):
             some = group[begin : begin + at_once]
-            result[:, some] = _some(joints.take(some), years[some], horizon_years, draws)
+            result[:, some] = _some(joints.take(some), years[some], leaky[some], horizon_years, draws)
     return YearsLikelihood(*result)
 
 
@@ -84,7 +90,7 @@ def yearly_chance(joints: JointDoubts, x):
     return np.minimum(chance, 1.0)
 
 
-def _some(joints, years, horizon, draws):
+def _some(joints, years, leaky, horizon, draws):
     """(annual, within, their errors, survival) of a block of joints."""
     count = len(joints)
     centres = [np.zeros((count, len(Doubt)))]
@@ -108,6 +114,8 @@ def _some(joints, years, horizon, draws):
     with np.errstate(divide="ignore", invalid="ignore"):
         stays = np.log1p(-p)
         past = np.where(years[:, None, None] == 0, 1.0, np.exp(years[:, None, None] * stays))
+        leaky = leaky[:, None, None]
+        past = past * np.where(leaky == 0, 1.0, -np.expm1(leaky * stays))
         coming = np.where(horizon == 0, 0.0, -np.expm1(horizon * stays))
     survived = weight * past
     survival = survived.mean(axis=(1, 2)) + np.where(unknown, np.nan, 0.0)

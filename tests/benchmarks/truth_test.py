@@ -159,37 +159,45 @@ def main(count=20_000, seed=1):
         world = World(whole, crew, generator)
         table.loc[whole.position, "Torque (ft-lb)"] = np.round(world.torque / FOOT_POUND)
         seen = fleet_of(with_gaps(table, generator), folder, "seen")
-    past, tightened, ahead = live(world, table["Year installed"].to_numpy()[whole.position])
+    installed = table["Year installed"].to_numpy()[whole.position]
+    past, tightened, ahead = live(world, installed)
     start = time.perf_counter()
     screening = screen(seen)
     fleet, limits = screening.fleet, screening.limits
     both, a, b = np.intersect1d(whole.position, fleet.position, return_indices=True)
     found = assess_likelihood(fleet, limits, seed)
-    years = likelihood_over_years(found.joints, (NOW - np.maximum(tightened, 0))[np.searchsorted(whole.position, fleet.position)], HORIZON, seed)
+    at = np.searchsorted(whole.position, fleet.position)
+    leaky = np.where(past > 0, tightened - installed, 0)[at]
+    years = likelihood_over_years(found.joints, (NOW - tightened)[at], HORIZON, seed, leaky_years=leaky)
     took = time.perf_counter() - start
     leaked, records = ahead[a], past[a]
     print(f"{len(both):,} joints, {took:.0f} s; leaks before now {records.sum():,} at {np.sum(records > 0):,} joints; "
           f"{leaked.sum():,} joints leak in {HORIZON} years, {(leaked & (records == 0)).sum():,} of them for the first time")  # fmt: skip
-    utilization = np.nanmax(limits.utilization, axis=1)
-    face = limits.utilization[:, limits.names.index("face_occasional")]
     rankings = {
         "likelihood over years, own record": years.within,
         "annual likelihood": found.likelihood,
-        "face utilization": face,
-        "largest utilization": utilization,
+        "face utilization": limits.utilization[:, limits.names.index("face_occasional")],
+        "largest utilization": np.nanmax(limits.utilization, axis=1),
+        "leaks on record": past[at],
         "age": NOW - fleet.age.installed_year,
         "size": fleet.pipe.outside_diameter,
         "pressure with surge": fleet.loads.operating_pressure + fleet.loads.occasional_surge,
         "at random": generator.random(len(fleet)),
     }
-    for kind, chosen in (("all joints", np.ones(len(both), dtype=bool)), ("joints without a leak before now", records == 0)):
-        print(f"\n{kind}: share of the coming leaks in the top 5 %, top 10 %, top 20 %; concordance")
-        for name, score in rankings.items():
-            s = np.where(np.isnan(score[b]), -np.inf, score[b])[chosen]
-            shares = [share_found(s, leaked[chosen], top) for top in (0.05, 0.1, 0.2)]
-            print(f"  {name:36s}" + "".join(f"{share:7.0%}" for share in shares) + f"{concordance(s, leaked[chosen]):8.3f}")
-    held_out = generator.random(len(both)) < 0.5
-    chance = years.within[b]
+    rankings = {name: np.where(np.isnan(score), -np.inf, score)[b] for name, score in rankings.items()}
+    compare("all joints", rankings, leaked, np.ones(len(both), dtype=bool))
+    compare("joints without a leak before now", rankings, leaked, records == 0)
+    calibrated(years.within[b], leaked, generator.random(len(both)) < 0.5)
+
+
+def compare(kind, rankings, leaked, chosen):
+    print(f"\n{kind}: share of the coming leaks in the top 5 %, top 10 %, top 20 %; concordance")
+    for name, score in rankings.items():
+        shares = [share_found(score[chosen], leaked[chosen], top) for top in (0.05, 0.1, 0.2)]
+        print(f"  {name:36s}" + "".join(f"{share:7.0%}" for share in shares) + f"{concordance(score[chosen], leaked[chosen]):8.3f}")
+
+
+def calibrated(chance, leaked, held_out):
     fit = calibrate(chance[~held_out], leaked[~held_out])
     right = fit.apply(chance[held_out])
     known = np.isfinite(right)

@@ -9,11 +9,12 @@ from scipy.stats import norm, spearmanr
 
 from screener import Settings, read_inventory, screen
 from screener.likelihood import leak as leak_module
-from screener.likelihood.explain import expected, explain, odds
+from screener.likelihood.explain import expected, explain, explain_record, odds
 from screener.likelihood.form import first_order
 from screener.likelihood.leak import Method, leak_likelihood
 from screener.likelihood.step import assess_likelihood, joint_doubts
 from screener.likelihood.tightness import DOUBT_LABELS, Doubt, HeldBy, assembly_clamps, limit_state, log_margin, margin, needed_clamp
+from screener.likelihood.years import likelihood_over_years
 
 SAMPLE = Path(__file__).resolve().parents[2] / "sample_inventory" / "inventory.xlsx"
 
@@ -173,6 +174,15 @@ def test_explanations_are_sentences_with_numbers(assessed):
         assert len(said) == 4 and all(s.endswith(".") and s[0].isupper() for s in said)
         assert "Most of the doubt is" in said[1] and DOUBT_LABELS[assessed.most_doubt[i]] in said[1]
         assert "bar" in said[2] and "nan" not in " ".join(said)
+
+
+def test_a_record_against_the_estimates_is_told(assessed):
+    worst = int(np.argmax(assessed.likelihood))
+    middle = int(np.argsort(assessed.likelihood)[len(assessed) // 3])
+    some = assessed.joints.take(np.array([worst, middle]))
+    years = likelihood_over_years(some, 30.0, 10.0, 1)
+    assert "not what its row says" in explain_record(years, 0, 30.0, 10.0)
+    assert explain_record(years, 1, 30.0, 10.0).startswith("After 30 leak-free years the chance of a leak is 1 in ")
 
 
 def test_the_story_happens_on_the_edge_of_leaking(assessed):

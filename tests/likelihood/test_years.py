@@ -81,6 +81,20 @@ def test_no_surge_scatter_and_no_cold_leak_at_once_or_never(joints):
     np.testing.assert_allclose(likelihood_over_years(still, 1.0, 10.0, 1).within, 0.0, atol=1e-12)
 
 
+def test_a_leak_on_record_raises_the_likelihood_by_bayes_rule(joints):
+    """Having leaked at least once in U years and not having leaked in them are the two halves of not knowing."""
+    unknown = likelihood_over_years(joints, 4.0, 10.0, 1)
+    leaked = likelihood_over_years(joints, 4.0, 10.0, 1, leaky_years=6.0)
+    spared = likelihood_over_years(joints, 10.0, 10.0, 1)
+    assert (leaked.within >= unknown.within * (1 - 1e-9)).all() and (leaked.within > spared.within).all()
+    clear = unknown.survival < 1  # chances estimated above 1 by sampling are cut there
+    total = (leaked.survival + spared.survival)[clear]
+    np.testing.assert_allclose(total, unknown.survival[clear], rtol=1e-6)
+    together = (leaked.survival * leaked.within + spared.survival * spared.within)[clear]
+    np.testing.assert_allclose(together, (unknown.survival * unknown.within)[clear], rtol=1e-6)
+    assert clear.sum() > 40
+
+
 def test_company_does_not_matter_and_unknowns_stay_alone(joints):
     whole = likelihood_over_years(joints, np.arange(60.0), 10.0, 1)
     alone = likelihood_over_years(joints.take(np.array([33])), 33.0, 10.0, 1)
