@@ -50,6 +50,14 @@ def collar_compliance(thickness, modulus, area, collars):
     return collars * thickness / (modulus * area)
 
 
+def gasket_compliance(thickness, modulus, area):
+    """Squeeze of a gasket for unit clamp force, t_g / (E_g A_g) [m/N]; zero where there is none.
+
+    thickness t_g [m]; modulus in compression E_g at the load's duration [Pa]; area under load A_g [m2]. Source: elementary.
+    """
+    return thickness / (modulus * area)
+
+
 def retained_force(force, elastic_compliance, collar_compliance_then, collar_compliance_now):
     """Clamp force after the collars have crept at constant total stretch, F (C_e + C_0) / (C_e + C) [N].
 
@@ -108,3 +116,17 @@ def clamp_after_retightening(first_force, second_force, kept_of_first_now, kept_
     """
     added = np.maximum(second_force - first_force * kept_of_first_then, 0.0)
     return first_force * kept_of_first_now + added * kept_of_second_now
+
+
+def clamp_after_tightenings(forces, kept):
+    """Clamp force today of a joint tightened any number of times, sum of d_j R(today - t_j) [N].
+
+    forces (m, ...): clamp asked for at assembly and at each later tightening [N]; kept (m + 1, m, ...): share kept R of what was added at
+    tightening j, at the time of tightening k (rows 0 to m - 1, only j < k is read) and today (row m) [-]. What is added at k is the force
+    asked for less what is left of the earlier ones, never less than nothing. Source: as `clamp_after_retightening`, its case of two.
+    """
+    added = []
+    for k, force in enumerate(forces):
+        left = sum(kept[k][j] * part for j, part in enumerate(added))
+        added.append(np.maximum(force - left, 0.0))
+    return sum(kept[len(added)][j] * part for j, part in enumerate(added))
