@@ -72,6 +72,12 @@ def write_run(
         progress("writing ranking.xlsx")
         paths["workbook"] = folder / "ranking.xlsx"
         write_workbook(screening, paths["workbook"], summary)
+    if len(screening.table) <= LAYER_ROWS:
+        from screener.outputs.page import write_page
+
+        progress("writing report.html")
+        paths["page"] = folder / "report.html"
+        write_page(screening, paths["page"], summary, mains)
     progress("writing run.json")
     write_json(folder / "run.json", run_record(screening, source, summary, paths, lines))
     return paths
