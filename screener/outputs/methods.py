@@ -30,10 +30,10 @@ CHAPTERS = (
     ("Pipe wall", ("mechanics/pipe_wall.py",)),
     ("Corrosion", ("mechanics/corrosion.py",)),
     ("Limit states of a joint", ("limits/basis.py", "limits/states.py", "limits/fatigue.py", "limits/assess.py")),
-    ("Pressure", ("pressure/surge.py", "pressure/water.py", "pressure/step.py", "pressure/extremes.py", "pressure/annual_maximum.py", "pressure/cycles.py")),
+    ("Pressure", ("pressure/surge.py", "pressure/water.py", "pressure/step.py", "pressure/extremes.py", "pressure/annual_maximum.py", "pressure/cycles.py", "pressure/stations_to_joints.py")),
     ("Transients", ("pressure/transients.py", "pressure/transient_pipe.py", "pressure/transient_wall.py")),
     ("Fatigue", ("fatigue/sn_curves.py", "fatigue/damage.py", "fatigue/mean_stress.py", "fatigue/pe_fatigue.py")),
-    ("Likelihood", ("likelihood/form.py", "likelihood/tightness.py", "likelihood/evidence.py", "likelihood/calibration.py")),
+    ("Likelihood", ("likelihood/step.py", "likelihood/tightness.py", "likelihood/variables.py", "likelihood/form.py", "likelihood/sampling.py", "likelihood/series.py", "likelihood/leak.py", "likelihood/years.py", "likelihood/evidence.py", "likelihood/calibration.py")),
     ("Ranking", ("priority/ranking.py",)),
 )
 
