@@ -18,9 +18,11 @@ from bokeh.resources import Resources
 import screener
 from screener.outputs import page_parts as parts
 from screener.outputs.page_data import CLASS_LABELS, PAGE_JOINTS, PageData, class_counts, coverage, doubt_counts, page_data
-from screener.outputs.page_map import page_places
+from screener.outputs.page_map import Places, page_places
+from screener.outputs.page_more import MoreResults, Section, more_sections
 from screener.outputs.page_plots import page_plots
 from screener.outputs.run_folder import write_text
+from screener.outputs.shown import CAUTIONS
 from screener.outputs.summary import Summary
 from screener.screening import Screening
 
@@ -32,19 +34,21 @@ CAPTIONS = {
 }
 
 
-def write_page(screening: Screening, path: str | Path, summary: Summary, mains=None, *, most: int = PAGE_JOINTS) -> Path:
-    """Write the page; mains: a frame of lines in the joints' reference system, or None."""
+def write_page(screening: Screening, path: str | Path, summary: Summary, mains=None, more: MoreResults | None = None, *, most: int = PAGE_JOINTS) -> Path:
+    """Write the page; mains: a frame of lines in the joints' reference system; more: results beyond the screening."""
     path = Path(path)
-    write_text(path, page_html(screening, summary, mains, most))
+    write_text(path, page_html(screening, summary, mains, more, most))
     return path
 
 
-def page_html(screening: Screening, summary: Summary, mains=None, most: int = PAGE_JOINTS) -> str:
+def page_html(screening: Screening, summary: Summary, mains=None, more: MoreResults | None = None, most: int = PAGE_JOINTS) -> str:
     """The page as text."""
     data = page_data(screening, most)
     places = page_places(screening, data, mains)
     plots = page_plots(data, places)
-    pictures = {name: picture(name, places.words if name == "map" else "") for name in plots}
+    sections = more_sections(more, screening.settings.units)
+    everything = plots | {name: plot for section in sections for name, (_, plot) in section.plots.items()}
+    pictures = {name: picture(name, picture_words(name, data, places)) for name in plots}
     library, program = Resources(mode="inline", components=["bokeh"]).js_raw[0], _file("page.js")
     library = library.replace("</script", "<\\/script")
     title = "Flanged joints, screened"
@@ -52,7 +56,7 @@ def page_html(screening: Screening, summary: Summary, mains=None, most: int = PA
         title=title,
         style=_file("page.css"),
         script_hashes=" ".join(script_hash(text) for text in (library, program)),
-        about=" ".join(E(line) for line in summary.about),
+        about="<br>".join(E(line) for line in summary.about),
         cautions=parts.cautions(),
         sentences=parts.sentences(summary),
         counts=parts.counts(summary),
@@ -63,11 +67,11 @@ def page_html(screening: Screening, summary: Summary, mains=None, most: int = PA
         first=parts.first_joints(data),
         pictures="".join(pictures.values()),
         bars=f"<div class='pair'>{parts.governing_bars(summary)}{parts.doubt_bars(doubt_counts(screening))}</div>{parts.coverage_bars(coverage(screening))}",
-        reserved="",
+        reserved="".join(more_section(section) for section in sections),
         unranked=parts.unranked(screening.table),
-        footer=E(f"joint-screener {screener.__version__}. This page holds everything it needs and asks nothing of the network."),
+        footer=E(f"{CAUTIONS[0]} {CAUTIONS[1]} joint-screener {screener.__version__}. This page holds everything it needs and asks nothing of the network."),
         settings=script_json(page_settings(data)),
-        documents=script_json(documents(plots)),
+        documents=script_json(documents(everything)),
         library=library,
         program=program,
     )
@@ -83,10 +87,23 @@ def picture(name: str, words: str = "") -> str:
     return f"<figure class='picture' aria-label='{E(title)}'><h2>{E(title)}</h2><div id='picture-{name}' class='canvas'></div><figcaption>{E(caption)} {E(words)}</figcaption></figure>"
 
 
+def picture_words(name: str, data: PageData, places: Places | None) -> str:
+    """What else the reader must know of a picture."""
+    if name == "map":
+        return places.words
+    meanings = [column.meaning for column in data.columns if column.name == "likelihood"]
+    return " ".join(meanings) if name == "measure" else ""
+
+
+def more_section(section: Section) -> str:
+    drawn = "".join(f"<figure class='picture'><h3>{E(title)}</h3><div id='picture-{name}' class='canvas'></div></figure>" for name, (title, _) in section.plots.items())
+    return f"<section><h2>{E(section.title)}</h2><p class='hint'>{E(section.words)}</p><div class='pair'>{drawn}</div></section>"
+
+
 def map_section(drawn: str) -> str:
     """The map beside the card of the selected joint; the card alone where no joint has a place."""
-    card = "<aside class='card' id='card' aria-live='polite'><h2>Selected joint</h2><p>Select a joint in a picture or in the table.</p></aside>"
-    zoom = "<div class='zoom' role='group' aria-label='Map' hidden><button type='button' data-zoom='0.6'>Zoom in</button><button type='button' data-zoom='1.7'>Zoom out</button><button type='button' data-zoom='all'>Whole fleet</button></div>"
+    card = "<aside class='card' id='card' tabindex='0' aria-label='One joint'><h2>Selected joint</h2><p>Select a joint in a picture or in the table.</p></aside>"
+    zoom = "<div class='zoom' role='group' aria-label='Map' hidden><button type='button' data-zoom='0.6'>Zoom in</button><button type='button' data-zoom='1.7'>Zoom out</button><button type='button' data-zoom='all'>First view</button></div>"
     drawn = drawn.replace("</h2>", f"</h2>{zoom}", 1) if drawn else "<p class='hint'>The inventory gives no coordinates, so there is no map.</p>"
     return f"<section class='place'>{drawn}{card}</section>"
 

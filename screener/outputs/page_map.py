@@ -15,12 +15,14 @@ METRES_PER_DEGREE = 111_320.0
 """Of latitude, on the mean sphere; the map is drawn, not surveyed."""
 METRES_PER_FOOT = 0.3048
 MOST_VERTICES = 200_000
+NAMED = 5
 
 
 @dataclass(frozen=True, eq=False)
 class Places:
     """x, y per joint of the page (NaN without a place), mains as lists of lines, and the scale.
 
+    frame: west, south, east, north of the first view, which leaves out joints far from all others.
     unit: "m" or "ft", "" where it is not known and no scale bar may be drawn. words: what the reader must know.
     """
 
@@ -29,6 +31,7 @@ class Places:
     mains_x: list[np.ndarray]
     mains_y: list[np.ndarray]
     unit: str
+    frame: tuple[float, float, float, float]
     words: str
 
 
@@ -48,10 +51,30 @@ def page_places(screening: Screening, data: PageData, mains=None) -> Places | No
     if unit == "ft":
         scale_x, scale_y = scale_x / METRES_PER_FOOT, scale_y / METRES_PER_FOOT
     lines_x, lines_y, note = _lines(mains, scale_x, scale_y)
+    x, y = x * scale_x, y * scale_y
+    frame, far = first_view(x, y)
     words = [] if metres else ["The file does not say which coordinate reference system it is in, so the map has no scale."]
     if not placed.all():
         words.append(f"{int((~placed).sum()):,} joints have no place and are only in the table.")
-    return Places(x * scale_x, y * scale_y, lines_x, lines_y, unit, " ".join([*words, note]).strip())
+    if far.any():
+        some = ", ".join(data.joints["joint_id"].to_numpy()[far][::-1][:NAMED])
+        words.append(f"{int(far.sum()):,} joints lie far from all others, outside the first view; their coordinates may be wrong: {some}{', ...' if far.sum() > NAMED else ''}.")
+    return Places(x, y, lines_x, lines_y, unit, frame, " ".join([*words, note]).strip())
+
+
+def first_view(x: np.ndarray, y: np.ndarray) -> tuple[tuple[float, float, float, float], np.ndarray]:
+    """(west, south, east, north) around the mass of the joints, and which lie far outside it.
+
+    Far: beyond the middle nine tenths of the joints, along either axis, by more than twice their width.
+    """
+    near = np.isfinite(x) & np.isfinite(y)
+    for values in (x, y):
+        low, high = np.nanquantile(values, [0.05, 0.95])
+        reach = 2 * (high - low)
+        if reach > 0:
+            near &= (values >= low - reach) & (values <= high + reach)
+    frame = (float(x[near].min()), float(y[near].min()), float(x[near].max()), float(y[near].max()))
+    return frame, np.isfinite(x) & np.isfinite(y) & ~near
 
 
 def _metres(crs, latitude: float) -> tuple[float, float, bool]:

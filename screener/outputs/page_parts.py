@@ -70,6 +70,8 @@ def pickers(data: PageData) -> str:
 def shown_number(value: float, column: PageColumn) -> str:
     if not np.isfinite(value):
         return "unknown"
+    if column.significant and value > 0.99:
+        return "&gt;0.99"
     if column.significant:
         return f"{value:.{column.digits}g}"
     return f"{value:{',' if column.grouped else ''}.{column.digits}f}"

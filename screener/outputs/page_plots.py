@@ -14,6 +14,7 @@ from bokeh.models import (
     HoverTool,
     ImperialLength,
     IndexFilter,
+    InlineStyleSheet,
     LassoSelectTool,
     MetricLength,
     PanTool,
@@ -27,7 +28,7 @@ from bokeh.models import (
 from bokeh.plotting import figure
 from bokeh.transform import factor_cmap, factor_mark
 
-from screener.outputs.page_data import CLASS_LABELS, PageData
+from screener.outputs.page_data import PageData
 from screener.outputs.page_map import Places
 
 INK, PALE, RULE, BAR = "#1f2a37", "#eef1f4", "#9aa5b1", "#7c9cbf"
@@ -43,7 +44,10 @@ def make_source(data: PageData, places: Places | None) -> tuple[ColumnDataSource
     number = data.joints["class"].to_numpy()
     columns = {name: _plain(data.joints[name]) for name in data.joints if name not in ("class", "position")}
     columns["class"] = [FACTORS[k] for k in number]
-    columns["dot"] = np.asarray(CLASS_SIZES, dtype=np.float32)[number]
+    # Marks shrink as they get many, to three fifths.
+    shrink = float(np.clip(1.2 - 0.1 * np.log10(max(len(number), 1)) ** 1.2, 0.6, 1.0))
+    columns["dot"] = np.asarray(CLASS_SIZES, dtype=np.float32)[number] * np.float32(shrink)
+    columns["dot_chosen"] = columns["dot"] + np.float32(7)
     if "nominal_size" in columns:
         columns["size_beside"] = (columns["nominal_size"] * (1 + 0.012 * (np.arange(len(number)) * 0.618 % 1 - 0.5))).astype(np.float32)
     if places is not None:
@@ -57,20 +61,29 @@ def _plain(column):
     return column.tolist() if column.dtype == object else column.to_numpy()
 
 
-def _figure(name: str, height: int, **more):
+def plain_figure(name: str, height: int, **more):
+    """A figure in the page's look that pans and zooms."""
     plot = figure(name=name, height=height, sizing_mode="stretch_width", tools="", toolbar_location="right", output_backend="canvas", **more)
     plot.toolbar.logo = None
-    pan, wheel, box = PanTool(), WheelZoomTool(modifiers="ctrl"), BoxSelectTool(description="Select joints in a box")
-    plot.add_tools(pan, wheel, box, LassoSelectTool(description="Select joints in an outline"), TapTool(), ResetTool())
+    plot.toolbar.stylesheets = [InlineStyleSheet(css="@media print{:host{display:none}}")]
+    # The wheel alone scrolls the page.
+    pan, wheel = PanTool(), WheelZoomTool(modifiers="ctrl")
+    plot.add_tools(pan, wheel, ResetTool())
     plot.toolbar.active_drag, plot.toolbar.active_scroll = pan, wheel
     plot.outline_line_color = RULE
-    plot.background_fill_color, plot.border_fill_color = "#ffffff", "#ffffff"
     plot.grid.grid_line_color = "#e3e7eb"
     for axis in plot.axis:
         axis.axis_line_color, axis.major_tick_line_color, axis.minor_tick_line_color = RULE, RULE, None
         axis.axis_label_text_font_style, axis.axis_label_text_font = "normal", "system-ui, sans-serif"
         axis.axis_label_text_color, axis.major_label_text_color = INK, INK
         axis.axis_label_text_font_size = axis.major_label_text_font_size = "13px"
+    return plot
+
+
+def _figure(name: str, height: int, **more):
+    """A figure in which joints can be selected."""
+    plot = plain_figure(name, height, **more)
+    plot.add_tools(BoxSelectTool(description="Select joints in a box"), LassoSelectTool(description="Select joints in an outline"), TapTool())
     return plot
 
 
@@ -86,8 +99,8 @@ def _joints(plot, source, view, x: str, y: str, hover: list[tuple[str, str]]) ->
     drawn = plot.add_glyph(
         source,
         Scatter(**look, line_color=INK, line_width=0.4, fill_alpha=0.95),
-        selection_glyph=Scatter(**look, line_color="#000000", line_width=2.2, fill_alpha=1.0),
-        nonselection_glyph=Scatter(**look, line_color=INK, line_width=0.2, fill_alpha=0.18, line_alpha=0.3),
+        selection_glyph=Scatter(**{**look, "size": "dot_chosen"}, line_color="#000000", line_width=2.4, fill_alpha=1.0),
+        nonselection_glyph=Scatter(**look, line_color=INK, line_width=0.2, fill_alpha=0.3, line_alpha=0.3),
         view=view,
     )
     plot.add_tools(HoverTool(tooltips=hover, renderers=[drawn], limit=4))
@@ -115,6 +128,9 @@ def map_plot(source, view, data: PageData, places: Places):
         mains = ColumnDataSource({"xs": places.mains_x, "ys": places.mains_y})
         plot.multi_line("xs", "ys", source=mains, line_color="#5d6b7a", line_width=1.6, line_alpha=0.8)
     _joints(plot, source, view, "x", "y", hover_lines(data))
+    west, south, east, north = places.frame
+    corners = plot.scatter([west, east], [south, north], size=0, line_alpha=0, fill_alpha=0)
+    plot.x_range.renderers = plot.y_range.renderers = [corners]
     if places.unit:
         measure = ImperialLength(exclude=["in", "yd", "ch", "fur", "lea"]) if places.unit == "ft" else MetricLength(include=["m", "km"])
         bar = ScaleBar(range=plot.x_range, unit=places.unit, dimensional=measure, location="bottom_left", bar_length=0.18)

@@ -23,6 +23,7 @@
     const value = data[column.name][k];
     if (column.digits === null) return value;
     if (!Number.isFinite(value)) return "";
+    if (column.significant && value > 0.99) return ">0.99";
     if (column.significant) return value === 0 ? "0" : value < 0.001 ? value.toExponential(column.digits - 1) : Number(value.toPrecision(column.digits)).toString();
     const digits = {minimumFractionDigits: column.digits, maximumFractionDigits: column.digits, useGrouping: column.grouped};
     return value.toLocaleString("en-US", digits);
@@ -76,7 +77,7 @@
 
   function say() {
     const count = (n) => n.toLocaleString("en-US");
-    byId("shown").textContent = `${count(shown.length)} of ${count(total)} joints shown, ${count(selected.size)} selected`;
+    byId("shown").textContent = `${count(shown.length)} of ${count(total)} joints shown, ${count(selected.size)} selected` + (selected.size === 1 ? `: ${data.joint_id[Array.from(selected)[0]]}` : "");
   }
 
   // ---- table: only the rows in sight exist
@@ -91,7 +92,7 @@
   const widths = settings.columns.map((c) => {
     let longest = 0;
     for (let k = 0; k < total; k += Math.max(1, Math.floor(total / 300))) longest = Math.max(longest, words(c, k).length);
-    return Math.min(Math.max(longest * 8.2 + 24, 76), 260);
+    return Math.min(Math.max(longest * 8.8 + 26, 84, Math.min(c.heading.length * 4, 130)), 280);
   });
   const template = widths.map((w) => `minmax(${w}px, ${w}fr)`).join(" ");
   const least = widths.reduce((a, b) => a + b, 0);
@@ -189,12 +190,13 @@
   // ---- card of one joint
   const card = byId("card");
   function drawCard() {
-    const title = make("h2", selected.size > 1 ? `${selected.size.toLocaleString("en-US")} joints selected` : "Selected joint");
-    if (selected.size !== 1) {
-      card.replaceChildren(title, make("p", selected.size ? "Tick “only selected” to list them alone." : "Select a joint in a picture or in the table."));
+    if (selected.size > 1) {
+      const title = `${selected.size.toLocaleString("en-US")} joints selected`;
+      card.replaceChildren(make("h2", title), make("p", "Tick “only selected” to see them alone."));
       return;
     }
-    const k = Array.from(selected)[0];
+    const k = selected.size ? Array.from(selected)[0] : rankOrder[0];
+    const title = make("h2", selected.size ? "Selected joint" : "First in the ranking");
     const facts = make("dl");
     for (const column of settings.columns.concat(settings.card)) {
       const said = words(column, k);
@@ -282,4 +284,5 @@
   document.body.classList.add("live");
   headings();
   refresh();
+  drawCard();
 })();
