@@ -1,171 +1,102 @@
-"""GIS layers: GeoPackage, shapefile, GeoJSON. Shapes become points, the reference system is kept as stated."""
+"""GIS layers and Parquet tables."""
 
 from __future__ import annotations
 
-import warnings
-from collections.abc import Iterator
-from contextlib import contextmanager
 from pathlib import Path
 
+import geopandas
 import numpy as np
-import pyarrow as pa
+import pandas as pd
+import pyarrow
+import pyarrow.parquet
 import pyogrio
-import shapely
-from pyproj import CRS
-from pyproj.exceptions import CRSError
 
-from screener.inventory.header_rows import count_known, inventory_weight
-from screener.inventory.open_arrow import guard_size, table_of
-from screener.inventory.open_cells import some_of
-from screener.inventory.open_kind import Kind, zip_items
+from screener.inventory.header_rows import MOST_COLUMNS, header_score
 from screener.records import InputError, Ledger, RawTable, Severity
 
-WGS84 = "EPSG:4326"
-_FAILURES = (pyogrio.errors.DataSourceError, pyogrio.errors.DataLayerError, pyogrio.errors.FeatureError, pyogrio.errors.CRSError, pa.ArrowException, UnicodeDecodeError)
 
-
-def open_layer(path: Path, kind: Kind, layer: str | None, ledger: Ledger) -> RawTable:
-    """The layer named, or the one whose fields look most like an inventory."""
-    said: list[str] = []
-    with _reading(path, said):
-        layers = _layers(path, kind)
-        source, name = _choose(path, layers, layer, ledger)
-        info = pyogrio.read_info(source, layer=name)
-        guard_size(path, max(info["features"], 0), len(info["fields"]))
-        meta, table = pyogrio.read_arrow(source, layer=name, return_fids=True)
-    for words in dict.fromkeys(said):
-        ledger.finding("layer_warning", Severity.NOTES, None, problem=f"the GIS reader says: {words[:200]}", action="read as far as possible")
-    fid = meta.get("fid_column") or "OGC_FID"
-    numbers = table.column(fid).to_numpy().astype(np.int64) if fid in table.column_names else np.arange(len(table))
-    geometry = meta.get("geometry_name") or "wkb_geometry"
-    places = (None, None, None)
-    if meta.get("geometry_type") and geometry in table.column_names:
-        shapes = _shapes(table.column(geometry))
-        crs = usable_crs(meta.get("crs"), ledger)
-        places = (*places_of(shapes, ledger), crs)
-        _check_degrees(*places, kind, ledger)
-    rest = table.select([k for k, column in enumerate(table.column_names) if column not in (fid, geometry)])
-    return table_of(path, name, rest, numbers, ledger, places)
-
-
-def list_layers(path: Path, kind: Kind) -> list[tuple[str, int, int, int]]:
-    """(name, features, fields, known headings) per layer."""
-    with _reading(path, []):
-        infos = [(name, pyogrio.read_info(source, layer=name)) for source, name in _layers(path, kind)]
-    return [(name, max(info["features"], 0), len(info["fields"]), count_known([str(f) for f in info["fields"]])) for name, info in infos]
-
-
-@contextmanager
-def _reading(path: Path, said: list[str]) -> Iterator[None]:
-    """The reader's own failures as one sentence, its warnings collected."""
+def open_layer(path: Path, kind: str, sheet: str | None, ledger: Ledger) -> RawTable:
+    """A vector layer: the one named, or the one whose fields look most like an inventory."""
+    source = f"/vsizip/{path}" if kind == "zipped shapefile" else str(path)
     try:
-        with warnings.catch_warnings(record=True) as caught:
-            warnings.simplefilter("always")
-            yield
-        said += [" ".join(str(item.message).split()) for item in caught if issubclass(item.category, RuntimeWarning)]
-    except _FAILURES as problem:
-        reason = " ".join(str(problem).split()).replace(f"'{path}' ", "").split("; It might help")[0]
-        raise InputError(f"{path}: can't be read as a GIS layer ({reason[:140]})") from None
-
-
-def _layers(path: Path, kind: Kind) -> list[tuple[str, str]]:
-    """(what to open, layer) of each layer."""
-    if kind is Kind.SHAPEFILE:
-        _check_side_files(path, [p.name for p in path.parent.iterdir() if p.stem == path.stem])
-    if kind is not Kind.ZIPPED_SHAPEFILE:
-        source = str(path.resolve())  # absolute, so that no part of the name is taken for a kind of source
-        return [(source, str(name)) for name in pyogrio.list_layers(source)[:, 0]]
-    found = []
-    names = [item.filename for item in zip_items(path) if "__MACOSX" not in item.filename]
-    for name in names:
-        if name.lower().endswith(".shp"):
-            _check_side_files(path, [other for other in names if other.rsplit(".", 1)[0] == name.rsplit(".", 1)[0]])
-            source = f"/vsizip/{{{path.resolve()}}}/{name}"
-            found += [(source, str(layer)) for layer in pyogrio.list_layers(source)[:, 0]]
-    return found
-
-
-def _check_side_files(path: Path, names: list[str]) -> None:
-    endings = {name.rsplit(".", 1)[-1].lower() for name in names}
-    missing = [f".{ending}" for ending in ("dbf", "shx") if ending not in endings]
-    if missing:
-        raise InputError(f"{path}: the shapefile is not whole, {' and '.join(missing)} missing; give all its files together (.shp, .shx, .dbf, .prj)")
-
-
-def _choose(path: Path, layers: list[tuple[str, str]], wanted: str | None, ledger: Ledger) -> tuple[str, str]:
+        layers = [str(name) for name in pyogrio.list_layers(source)[:, 0]]
+    except (pyogrio.errors.DataSourceError, pyogrio.errors.DataLayerError) as problem:
+        raise InputError(f"{path}: can't be read as a GIS layer ({_short(problem)})") from None
     if not layers:
         raise InputError(f"{path}: has no layers")
-    names = [name for _, name in layers]
-    if wanted is not None:
-        for source, name in layers:
-            if name == wanted:
-                return source, name
-        raise InputError(f"{path}: there is no layer {wanted!r}; there are: {some_of(names, 20)}")
-    if len(layers) == 1:
-        return layers[0]
-    source, chosen = max(layers, key=_weight)
-    others = some_of([name for name in names if name != chosen])
-    ledger.finding("sheet_chosen", Severity.NOTES, None, problem=f"the file has {len(names)} layers; {chosen!r} looks most like the inventory", action=f"read {chosen!r}, not: {others}")
-    return source, chosen
-
-
-def _weight(layer: tuple[str, str]) -> tuple:
-    info = pyogrio.read_info(layer[0], layer=layer[1])
-    features = max(info["features"], 0)
-    return inventory_weight(count_known([str(f) for f in info["fields"]]), features), "Point" in str(info["geometry_type"]), features
-
-
-def _shapes(column: pa.ChunkedArray) -> np.ndarray:
-    if isinstance(column.type, pa.BaseExtensionType):
-        column = pa.chunked_array([chunk.storage for chunk in column.chunks], type=column.type.storage_type)
-    return shapely.from_wkb(column.to_numpy(), on_invalid="ignore")
-
-
-def places_of(shapes: np.ndarray, ledger: Ledger) -> tuple[np.ndarray, np.ndarray]:
-    """Representative points; empty, missing and unreadable shapes are NaN and noted."""
-    points = np.where(shapely.is_empty(shapes), None, shapes)
-    other = shapely.get_type_id(points) > 0
-    if other.any():
-        points[other] = _points_in(points[other])
-    x, y = shapely.get_x(points), shapely.get_y(points)
-    unknown = ~(np.isfinite(x) & np.isfinite(y))
-    x[unknown] = y[unknown] = np.nan
-    ledger.finding("no_place", Severity.NOTES, unknown, problem="the feature has no shape, or one that can't be read", action="kept without a place")
-    ledger.finding("place_from_shape", Severity.NOTES, other & ~unknown, problem="the feature is not a point", action="placed at a point on or inside its shape")
-    return x, y
-
-
-def _points_in(shapes: np.ndarray) -> np.ndarray:
+    if sheet is not None and sheet not in layers:
+        raise InputError(f"{path}: there is no layer {sheet!r}; there are: {', '.join(layers)}")
+    chosen = sheet or max(layers, key=lambda name: _layer_score(source, name))
+    if sheet is None and len(layers) > 1:
+        others = ", ".join(name for name in layers if name != chosen)
+        ledger.finding("sheet_chosen", Severity.NOTES, None, problem=f"the file has several layers; {chosen!r} looks most like the inventory", action=f"read {chosen!r}, not: {others}")
     try:
-        return shapely.point_on_surface(shapes)
-    except shapely.errors.GEOSException:
-        return np.array([*(_point_in(shape) for shape in shapes), None], dtype=object)[:-1]
+        frame = pyogrio.read_dataframe(source, layer=chosen, use_arrow=True, fid_as_index=True)
+    except (pyogrio.errors.DataSourceError, pyogrio.errors.DataLayerError, pyogrio.errors.FeatureError, pyarrow.ArrowInvalid, ValueError, UnicodeDecodeError) as problem:
+        raise InputError(f"{path}, layer {chosen!r}: can't be read ({_short(problem)})") from None
+    return _from_frame(path, chosen, frame, np.asarray(frame.index, dtype=np.int64), ledger)
 
 
-def _point_in(shape) -> shapely.Geometry | None:
+def _layer_score(source: str, layer: str) -> float:
+    info = pyogrio.read_info(source, layer=layer)
+    return header_score([str(f) for f in info["fields"]]) + (1.0 if "Point" in str(info.get("geometry_type")) else 0.0) + min(max(info.get("features", 0), 0), 50) * 0.1
+
+
+def open_parquet(path: Path, ledger: Ledger) -> RawTable:
+    """A Parquet table, with geometry where it is GeoParquet."""
     try:
-        return shapely.point_on_surface(shape)
-    except shapely.errors.GEOSException:
-        return None
+        schema = pyarrow.parquet.read_schema(path)
+        if schema.metadata and b"geo" in schema.metadata:
+            frame = geopandas.read_parquet(path)
+        else:
+            frame = pd.read_parquet(path)
+    except (pyarrow.ArrowException, OSError, ValueError) as problem:
+        raise InputError(f"{path}: the Parquet file is damaged or of a kind that can't be read ({_short(problem)})") from None
+    return _from_frame(path, "", frame.reset_index(drop=True), np.arange(1, len(frame) + 1), ledger)
 
 
-def usable_crs(stated: str | None, ledger: Ledger) -> str | None:
-    """The reference system as "EPSG:code" where it has one, else as WKT; None with a finding where the file gives none."""
-    problem = "the layer does not say its coordinate reference system"
-    if stated:
+def _from_frame(path: Path, layer: str, frame: pd.DataFrame, numbers: np.ndarray, ledger: Ledger) -> RawTable:
+    x = y = crs = None
+    if isinstance(frame, geopandas.GeoDataFrame) and frame.columns.size:
         try:
-            crs = CRS.from_user_input(stated)
-            code = crs.to_epsg()
-            return f"EPSG:{code}" if code else crs.to_wkt()
-        except CRSError:
-            problem = "the layer's coordinate reference system can't be understood"
-    ledger.finding("no_reference_system", Severity.DOUBTS, None, problem=problem, action="coordinates kept as written; the output layer carries none either")
-    return None
+            geometry = frame.geometry
+        except AttributeError:
+            geometry = None
+        if geometry is not None:
+            x, y, crs = _places(geometry, ledger)
+            frame = pd.DataFrame(frame.drop(columns=geometry.name))
+    if frame.shape[1] > MOST_COLUMNS:
+        raise InputError(f"{path}: has {frame.shape[1]:,} columns; at most {MOST_COLUMNS:,} are read")
+    if frame.shape[1] == 0:
+        raise InputError(f"{path}{', ' + layer if layer else ''}: has shapes and no attributes")
+    headings = tuple(str(name)[:200] for name in frame.columns)
+    cells = frame.reset_index(drop=True)
+    cells.columns = range(len(headings))
+    return RawTable(path.name, layer, headings, cells, numbers, x, y, crs)
 
 
-def _check_degrees(x: np.ndarray, y: np.ndarray, crs: str | None, kind: Kind, ledger: Ledger) -> None:
-    if crs == WGS84 and kind is Kind.GEOJSON:
-        ledger.finding("geojson_reference_system", Severity.NOTES, None, problem="GeoJSON is in longitude and latitude (WGS 84) by its standard, RFC 7946", action=f"taken as {WGS84}")
-    if crs == WGS84:
-        beyond = (np.abs(x) > 180.0) | (np.abs(y) > 90.0)
-        ledger.finding("beyond_degrees", Severity.DOUBTS, beyond, problem="the file says longitude and latitude, and the coordinates are beyond 180 and 90 degrees", action="coordinates kept as written; check the reference system")
+def _places(geometry: geopandas.GeoSeries, ledger: Ledger):
+    """Representative points; empty and missing shapes are NaN and noted."""
+    empty = np.asarray(geometry.isna() | geometry.is_empty)
+    ledger.finding("no_place", Severity.NOTES, empty, problem="the feature has no shape", action="ranked; it appears in the table of joints without a place")
+    x = np.full(len(geometry), np.nan)
+    y = np.full(len(geometry), np.nan)
+    kinds = geometry.geom_type
+    point = np.asarray(kinds == "Point") & ~empty
+    if point.any():
+        x[point], y[point] = geometry[point].x.to_numpy(), geometry[point].y.to_numpy()
+    other = ~point & ~empty
+    if other.any():
+        inner = geometry[other].representative_point()
+        x[other], y[other] = inner.x.to_numpy(), inner.y.to_numpy()
+        ledger.finding("place_from_shape", Severity.NOTES, other, problem="the feature is not a point", action="placed at a point on or inside its shape")
+    crs = geometry.crs
+    if crs is None:
+        ledger.finding("no_reference_system", Severity.DOUBTS, None, problem="the layer does not say its coordinate reference system", action="coordinates kept as written; the output layer carries none either")
+        return x, y, None
+    code = crs.to_epsg()
+    return x, y, f"EPSG:{code}" if code else crs.to_wkt()
+
+
+def _short(problem: Exception) -> str:
+    return " ".join(str(problem).split())[:140]
